@@ -1,0 +1,531 @@
+"""The one composition: structure, ring systems, states, contacts, ledgers, equilibrium."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+from ringstrain.contacts import Survey, survey
+from ringstrain.equilibrium import Equilibrium, Population, compare, populations
+from ringstrain.errors import MissingValue
+from ringstrain.ledger import GroupMap, Ledger, Line, Regime, make_ledger, regime_of
+from ringstrain.provenance import combined_sigma
+from ringstrain.ringgraph import RingSystem, find_ring_systems
+from ringstrain.shaping import find_states
+from ringstrain.states import Shapes
+from ringstrain.stereo import resolve
+from ringstrain.structure.read import read
+from ringstrain.structure.records import Structure
+from ringstrain.substituents import describe_group
+from ringstrain.symmetry import Operation, carries, operations
+from ringstrain.tables import Tables, load_tables
+from ringstrain.tables.conditions import Conditions, make_conditions
+from ringstrain.tables.prices import PriceBook, price_book
+from ringstrain.units import ROOM_TEMPERATURE_K
+
+SCHEMA = "ringstrain/1"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class State:
+    """One shape of a ring system, priced.
+
+    Attributes
+    ----------
+    id
+        Letter; A is the lowest.
+    shapes
+        Shape of each ring.
+    axial, equatorial
+        Exocyclic atoms that are axial or equatorial to one of their rings.
+    axial_H
+        Ring nitrogens whose hydrogen is axial.
+    nitrogen
+        Ring nitrogen and where its hydrogen or group points.
+    equivalent_to
+        Id of the state it is a symmetry copy or mirror image of, or None.
+    counts
+        Number of contacts of each kind.
+    energy_kcal, uncertainty_kcal
+        Ledger total and its standard uncertainty [kcal/mol].
+    lower_bound
+        True when a contact has no price, so that the energy is the known part.
+    regime
+        Least certain kind of line.
+    population, population_low, population_high
+        Share within the ring system with its 95 % limits; None when an unpriced contact decides.
+    lines
+        The ledger.
+    sites
+        Where each exocyclic atom points, ring by ring.
+    form
+        Chair name of a pyranose, else empty.
+    detail
+        Shapes and contacts behind it, for what builds on the state.
+    """
+
+    id: str
+    shapes: tuple[str, ...]
+    axial: tuple[int, ...]
+    equatorial: tuple[int, ...]
+    axial_H: tuple[int, ...]
+    nitrogen: tuple[tuple[int, str], ...]
+    equivalent_to: str | None
+    counts: tuple[tuple[str, int], ...]
+    energy_kcal: float
+    uncertainty_kcal: float
+    lower_bound: bool
+    regime: Regime
+    population: float | None
+    population_low: float | None
+    population_high: float | None
+    lines: tuple[Line, ...]
+    sites: tuple[tuple[int, int, int, str], ...]
+    form: str = ""
+    detail: Detail = field(repr=False)
+
+    def as_dict(self) -> dict[str, Any]:
+        """The state as the JSON of a chairs document shows it."""
+        document: dict[str, Any] = {
+            "id": self.id,
+            "shapes": list(self.shapes),
+            "axial": list(self.axial),
+            "equatorial": list(self.equatorial),
+            "axial_H": list(self.axial_H),
+            "equivalent_to": self.equivalent_to,
+            "counts": dict(self.counts),
+            "energy_kcal": self.energy_kcal,
+            "uncertainty_kcal": self.uncertainty_kcal,
+            "lower_bound": self.lower_bound,
+            "regime": self.regime,
+            "population": self.population,
+            "population_low": self.population_low,
+            "population_high": self.population_high,
+            "lines": [line.as_dict() for line in self.lines],
+            "sites": [
+                {"atom": atom, "ring_atom": ring_atom, "ring": ring, "position": position}
+                for atom, ring_atom, ring, position in self.sites
+            ],
+            "nitrogen": {str(atom): position for atom, position in self.nitrogen},
+        }
+        if self.form:
+            document["form"] = self.form
+        return document
+
+
+@dataclass(frozen=True, slots=True)
+class Detail:
+    """What a state was priced from.
+
+    Attributes
+    ----------
+    shapes
+        Torsions of every ring and the geometry they belong to.
+    facts
+        Positions and contacts.
+    ledger
+        The priced contacts.
+    """
+
+    shapes: Shapes
+    facts: Survey
+    ledger: Ledger
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SystemResult:
+    """All states of one ring system and the equilibrium between them.
+
+    Attributes
+    ----------
+    rings
+        Atoms of each six-membered ring.
+    states
+        Lowest first.
+    equilibrium
+        None when the system is locked.
+    locked
+        True when only one ring form exists.
+    system
+        The ring system itself.
+    groups
+        Group on each exocyclic site, by (ring atom, neighbour).
+    """
+
+    rings: tuple[tuple[int, ...], ...]
+    states: tuple[State, ...]
+    equilibrium: Equilibrium | None
+    locked: bool
+    system: RingSystem = field(repr=False)
+    groups: GroupMap = field(repr=False)
+
+    def state(self, id: str) -> State:
+        """The state of that id.
+
+        Raises
+        ------
+        KeyError
+            If there is none.
+        """
+        for state in self.states:
+            if state.id == id:
+                return state
+        raise KeyError(id)
+
+    def as_dict(self) -> dict[str, Any]:
+        """The ring system as the JSON of a chairs document shows it."""
+        return {
+            "rings": [list(ring) for ring in self.rings],
+            "states": [state.as_dict() for state in self.states],
+            "equilibrium": self.equilibrium.as_dict() if self.equilibrium else None,
+            "locked": self.locked,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Analysis:
+    """The answer for one structure.
+
+    Attributes
+    ----------
+    structure
+        As read.
+    conditions
+        Medium and temperature.
+    ring_systems
+        One result each, ordered by lowest atom; energies of separate systems add.
+    notes
+        What the reader should know.
+    tables_revision
+        Which tables priced it.
+    """
+
+    structure: Structure
+    conditions: Conditions
+    ring_systems: tuple[SystemResult, ...]
+    notes: tuple[str, ...]
+    tables_revision: str
+
+    @property
+    def input(self) -> str:
+        """The input as given."""
+        return self.structure.text
+
+    @property
+    def smiles(self) -> str:
+        """Canonical SMILES."""
+        return self.structure.smiles
+
+    @property
+    def temperature_K(self) -> float:
+        """Temperature [K]."""
+        return self.conditions.temperature_K
+
+    @property
+    def medium(self) -> str:
+        """Medium class, or the solvent when one was named."""
+        return self.conditions.solvent or self.conditions.medium
+
+    def as_dict(self) -> dict[str, Any]:
+        """The chairs document, ready for JSON."""
+        from ringstrain import __version__
+
+        return {
+            "schema": SCHEMA,
+            "kind": "chairs",
+            "version": __version__,
+            "input": self.input,
+            "smiles": self.smiles,
+            "temperature_K": self.temperature_K,
+            "medium": self.medium,
+            "ring_systems": [result.as_dict() for result in self.ring_systems],
+            "notes": list(self.notes),
+        }
+
+
+def analyze(
+    structure: Structure | str,
+    *,
+    temperature_K: float = ROOM_TEMPERATURE_K,
+    medium: str = "nonpolar",
+    tables: Tables | None = None,
+    strict: bool = False,
+) -> Analysis:
+    """States, ledgers, populations and equilibrium of every six-membered ring system.
+
+    Parameters
+    ----------
+    structure
+        A Structure, or text for :func:`ringstrain.read`.
+    temperature_K
+        Temperature [K].
+    medium
+        ``gas``, ``nonpolar``, ``polar``, ``protic`` or a solvent name.
+    tables
+        Price tables; those of the package when None.
+    strict
+        True to raise instead of bounding when a contact has no price.
+
+    Returns
+    -------
+    Analysis
+        One result per ring system.
+
+    Raises
+    ------
+    InputError
+        If the text is no usable structure or an open stereocentre matters.
+    OutOfScope
+        If the model does not cover the rings.
+    MissingValue
+        If ``strict`` and a contact has no price.
+    TableError
+        If the tables are faulty.
+
+    Examples
+    --------
+    >>> result = analyze("C[C@H]1CCC[C@@H](C)C1").ring_systems[0]
+    >>> [round(state.energy_kcal, 2) for state in result.states]
+    [0.0, 5.44]
+    """
+    molecule = read(structure) if isinstance(structure, str) else structure
+    prices = tables if tables is not None else load_tables()
+    conditions = make_conditions(prices, temperature_K=temperature_K, medium=medium)
+    book = price_book(prices, conditions)
+    systems, notes = find_ring_systems(molecule)
+    results = tuple(_analyze_system(molecule, system, book) for system in systems)
+    if strict:
+        _refuse_unknown(results)
+    return Analysis(
+        structure=molecule,
+        conditions=conditions,
+        ring_systems=results,
+        notes=(*molecule.notes, *notes, *_remarks(molecule, results)),
+        tables_revision=prices.revision,
+    )
+
+
+def group_map(structure: Structure, system: RingSystem, tables: Tables) -> GroupMap:
+    """Group on every site of a system, ring neighbours included where rings are fused or spiro."""
+    groups: GroupMap = {}
+    several = len(system.rings) > 1
+    for atom in system.atoms:
+        for n in structure.neighbours[atom]:
+            if n not in system.atom_set or several:
+                groups[(atom, int(n))] = describe_group(structure, int(n), atom, system.atom_set, tables)
+    return groups
+
+
+def _analyze_system(structure: Structure, system: RingSystem, book: PriceBook) -> SystemResult:
+    groups = group_map(structure, system, book.tables)
+    resolved = resolve(structure, system, groups)
+    details = find_states(resolved, groups, book)
+    priced = sorted(
+        (Detail(shapes, facts, ledger) for shapes, facts, ledger in details),
+        key=lambda d: (round(d.ledger.total_kcal, 9), _shape_key(d.shapes)),
+    )
+    copies = _copies(priced, groups)
+    sets = _form_sets(priced, copies)
+    shares = _shares(priced, sets, book)
+    ids = [_letter(i) for i in range(len(priced))]
+    states = tuple(
+        _make_state(ids[i], detail, None if copies[i] is None else ids[copies[i] or 0], shares[i])
+        for i, detail in enumerate(priced)
+    )
+    equilibrium = _equilibrium(priced, ids, sets, copies, book)
+    return SystemResult(
+        rings=tuple(ring.atoms for ring in system.rings),
+        states=states,
+        equilibrium=equilibrium,
+        locked=equilibrium is None,
+        system=system,
+        groups=groups,
+    )
+
+
+def _shape_key(shapes: Shapes) -> tuple[object, ...]:
+    """A fixed order among states of equal energy."""
+    return tuple((ring.shape, tuple(-t for t in ring.torsions)) for ring in shapes.rings), shapes.inverted
+
+
+def _letter(number: int) -> str:
+    """A, B, ... Z, AA, AB, ..."""
+    text = ""
+    number += 1
+    while number:
+        number, rest = divmod(number - 1, 26)
+        text = chr(65 + rest) + text
+    return text
+
+
+def _copies(priced: Sequence[Detail], groups: GroupMap) -> list[int | None]:
+    """For each state the earlier state it is a symmetry copy of, if any."""
+    copies: list[int | None] = [None] * len(priced)
+    found: list[Operation] | None = None
+    for i, detail in enumerate(priced):
+        for j in range(i):
+            if copies[j] is not None or abs(priced[j].ledger.total_kcal - detail.ledger.total_kcal) > 1e-7:
+                continue
+            if found is None:
+                found = operations(detail.shapes.geometry, groups)
+            if any(carries(operation, priced[j].shapes, detail.shapes) for operation in found):
+                copies[i] = j
+                break
+    return copies
+
+
+def _form_sets(priced: Sequence[Detail], copies: Sequence[int | None]) -> list[int]:
+    """Number of the ring form of each state: symmetry copies and N-invertomers share one."""
+    if not priced:
+        return []
+    watched = _substituted_rings(priced[0].shapes)
+    numbers: dict[tuple[object, ...], int] = {}
+    sets: list[int] = []
+    for i, detail in enumerate(priced):
+        original = copies[i]
+        if original is not None:
+            sets.append(sets[original])
+            continue
+        form = tuple(detail.shapes.rings[number] for number in watched)
+        sets.append(numbers.setdefault(form, len(numbers)))
+    return sets
+
+
+def _substituted_rings(shapes: Shapes) -> tuple[int, ...]:
+    """Rings that bear a substituent or are fused; all of them when none does."""
+    geometry = shapes.geometry
+    members = geometry.system.atom_set
+    bearing = []
+    fused = {number for block in geometry.system.blocks if len(block) > 1 for number in block}
+    for number, ring in enumerate(geometry.system.rings):
+        outside = any(
+            n not in members and geometry.structure.atoms[n].number != 1
+            for atom in ring.atoms
+            for n in geometry.structure.neighbours[atom]
+        )
+        if outside or number in fused:
+            bearing.append(number)
+    return tuple(bearing) or tuple(range(len(geometry.system.rings)))
+
+
+def _shares(priced: Sequence[Detail], sets: Sequence[int], book: PriceBook) -> list[Population | None]:
+    """Population of each state; none when an unpriced contact decides."""
+    ledgers = [detail.ledger for detail in priced]
+    first = sorted(line.key + (line.count,) for line in ledgers[0].unknown)
+    if any(sorted(line.key + (line.count,) for line in ledger.unknown) != first for ledger in ledgers[1:]):
+        return [None] * len(priced)
+    return list(populations(ledgers, sets, book.conditions.temperature_K, book.tables.model_terms))
+
+
+def _equilibrium(
+    priced: Sequence[Detail], ids: Sequence[str], sets: Sequence[int], copies: Sequence[int | None], book: PriceBook
+) -> Equilibrium | None:
+    """Equilibrium between the favoured ring form and the next one; None when there is one form only."""
+    favoured = [i for i in range(len(priced)) if sets[i] == sets[0]]
+    rest = [i for i in range(len(priced)) if sets[i] != sets[0]]
+    temperature, model = book.conditions.temperature_K, book.tables.model_terms
+    if rest:
+        other = [i for i in rest if sets[i] == sets[rest[0]]]
+        return compare(
+            [(ids[i], priced[i].ledger) for i in favoured],
+            [(ids[i], priced[i].ledger) for i in other],
+            temperature,
+            model,
+        )
+    mirror = next((i for i in favoured if copies[i] is not None and _differs(priced[0], priced[i])), None)
+    if mirror is None:
+        return None
+    return compare([(ids[0], priced[0].ledger)], [(ids[mirror], priced[mirror].ledger)], temperature, {})
+
+
+def _differs(first: Detail, second: Detail) -> bool:
+    """True when two states have different ring shapes (not only another side of a nitrogen)."""
+    return first.shapes.rings != second.shapes.rings
+
+
+def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Population | None) -> State:
+    placed = [p for p in detail.facts.placed if p.occupant == "atom"]
+    axial = sorted({p.site.neighbour for p in placed if p.position == "axial"})
+    equatorial = sorted({p.site.neighbour for p in placed if p.position == "equatorial"})
+    ledger = detail.ledger
+    counts = {
+        "gauche": "gauche",
+        "syn_axial_XH": "syn-axial X//H",
+        "syn_axial_XY": "syn-axial X//Y",
+        "syn_axial_X_lp": "syn-axial X//lone pair",
+        "peri": "peri",
+        "geminal": "geminal",
+    }
+    tally = {kind: 0 for kind in counts.values()}
+    for contact in detail.facts.contacts:
+        tally[contact.kind] += 1
+    nitrogen = _nitrogen(detail)
+    return State(
+        id=id,
+        shapes=tuple(ring.shape for ring in detail.shapes.rings),
+        axial=tuple(axial),
+        equatorial=tuple(equatorial),
+        axial_H=tuple(atom for atom, position, bare in nitrogen if position == "axial" and bare),
+        nitrogen=tuple((atom, position) for atom, position, _ in nitrogen),
+        equivalent_to=equivalent_to,
+        counts=tuple((name, tally[kind]) for name, kind in counts.items()),
+        energy_kcal=ledger.total_kcal,
+        uncertainty_kcal=combined_sigma(ledger.terms),
+        lower_bound=bool(ledger.unknown),
+        regime=regime_of(ledger.lines),
+        population=share.value if share else None,
+        population_low=share.low if share else None,
+        population_high=share.high if share else None,
+        lines=ledger.lines,
+        sites=tuple((p.site.neighbour, p.site.ring_atom, p.site.ring, p.position) for p in placed),
+        detail=detail,
+    )
+
+
+def _nitrogen(detail: Detail) -> list[tuple[int, str, bool]]:
+    """Each inverting nitrogen, where its hydrogen or group points, and whether it is a hydrogen."""
+    found: dict[int, tuple[int, str, bool]] = {}
+    kinds = detail.shapes.geometry.system.kinds
+    for p in detail.facts.placed:
+        if kinds[p.site.ring_atom] == "inverting" and p.occupant != "lone pair":
+            found.setdefault(p.site.ring_atom, (p.site.ring_atom, p.position, p.occupant == "hydrogen"))
+    return [found[atom] for atom in sorted(found)]
+
+
+def _refuse_unknown(results: Sequence[SystemResult]) -> None:
+    """Raise for the first contact without a price."""
+    for result in results:
+        for state in result.states:
+            for line in state.lines:
+                if line.value_kcal is None:
+                    raise MissingValue(f"{line.rule} price", line.groups, atoms=line.atoms[0])
+
+
+def _remarks(structure: Structure, results: Sequence[SystemResult]) -> tuple[str, ...]:
+    """Notes that follow from what was found."""
+    notes = []
+    if any(result.system.large for result in results):
+        notes.append("A ring of eight or more members is fused on; its own conformers are not counted.")
+    inside = {a for result in results for a in result.system.atoms}
+    open_side = [
+        i
+        for i in structure.fragment
+        if i not in inside and structure.configurations[i] is None and _looks_stereogenic(structure, i)
+    ]
+    if open_side:
+        numbers = ", ".join(str(i + 1) for i in open_side)
+        notes.append(f"Configuration at atom {numbers} (side chain) not given; it does not enter the answer.")
+    return tuple(notes)
+
+
+def _looks_stereogenic(structure: Structure, atom: int) -> bool:
+    """True for a side-chain carbon with four different neighbours, judged by constitution."""
+    record = structure.atoms[atom]
+    around = structure.neighbours[atom]
+    if record.number != 6 or record.aromatic or len(around) + record.hydrogens != 4 or record.hydrogens > 1:
+        return False
+    from ringstrain.substituents import branch_code
+
+    codes = {branch_code(structure, int(n), atom, frozenset((atom,)), stereo=False)[0] for n in around}
+    return len(codes) == len(around)

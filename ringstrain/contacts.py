@@ -1,0 +1,206 @@
+"""What stands where in a state, and which atoms come close: facts of geometry, not yet priced."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+from ringstrain.geometry import Geometry, Path, Site, is_gauche, wrap
+from ringstrain.states import Shapes
+from ringstrain.structure.records import Structure
+
+Position = Literal["axial", "equatorial", "isoclinal"]
+ContactKind = Literal["gauche", "syn-axial X//H", "syn-axial X//Y", "syn-axial X//lone pair", "peri", "geminal"]
+Occupant = Literal["atom", "hydrogen", "lone pair"]
+
+
+@dataclass(frozen=True, slots=True)
+class Contact:
+    """One close approach.
+
+    Attributes
+    ----------
+    kind
+        What it is.
+    atoms
+        The path a-b-c-d of a gauche contact, the chain of a syn-axial or peri one (ends first and last; a
+        hydrogen or lone pair is -1), or the two groups of a geminal pair around their ring atom.
+    torsion
+        Torsion of a gauche path [degree], else 0.
+    """
+
+    kind: ContactKind
+    atoms: tuple[int, ...]
+    torsion: float = 0.0
+
+
+@dataclass(frozen=True, slots=True)
+class Placed:
+    """A site and where it points in a state."""
+
+    site: Site
+    position: Position
+    occupant: Occupant
+
+
+@dataclass(frozen=True, slots=True)
+class Survey:
+    """All that geometry says about one state.
+
+    Attributes
+    ----------
+    placed
+        Every exocyclic site of a tetrahedral atom, in ring order.
+    contacts
+        Gauche, syn-axial, peri and geminal contacts, each once.
+    """
+
+    placed: tuple[Placed, ...]
+    contacts: tuple[Contact, ...]
+
+    def of_kind(self, kind: ContactKind) -> tuple[Contact, ...]:
+        """Contacts of one kind."""
+        return tuple(c for c in self.contacts if c.kind == kind)
+
+
+def occupant_of(structure: Structure, site: Site) -> Occupant:
+    """What stands on a site; isotopic hydrogen counts as hydrogen."""
+    if site.neighbour >= 0:
+        return "hydrogen" if structure.atoms[site.neighbour].number == 1 else "atom"
+    return "hydrogen" if structure.atoms[site.ring_atom].hydrogens > -1 - site.neighbour else "lone pair"
+
+
+def site_torsions(state: Shapes, site: Site) -> tuple[float, float]:
+    """Torsions of a site to the ring path ahead and to the one behind [degree]."""
+    torsions = state.rings[site.ring].torsions
+    return (
+        wrap(torsions[site.place] + site.offset_ahead),
+        wrap(torsions[site.place - 1] + site.offset_behind),
+    )
+
+
+def position_of(state: Shapes, site: Site) -> Position:
+    """Axial is the site with the smaller sum of its two ring torsions; equal sums are isoclinal."""
+    torsions = state.rings[site.ring].torsions
+    ahead, behind = torsions[site.place], torsions[site.place - 1]
+    own = abs(wrap(ahead + site.offset_ahead)) + abs(wrap(behind + site.offset_behind))
+    if not site.face:
+        return "equatorial"
+    other = abs(wrap(ahead - site.offset_ahead)) + abs(wrap(behind - site.offset_behind))
+    if abs(own - other) < 1.0:
+        return "isoclinal"
+    return "axial" if own < other else "equatorial"
+
+
+def survey(state: Shapes) -> Survey:
+    """Positions and contacts of a state.
+
+    Parameters
+    ----------
+    state
+        Shape of every ring.
+
+    Returns
+    -------
+    Survey
+        Each contact once, in a fixed order.
+    """
+    geometry = state.geometry
+    placed = tuple(
+        Placed(site, position_of(state, site), occupant_of(geometry.structure, site))
+        for ring in geometry.sites
+        for place in ring
+        for site in place
+        if not (site.face == 0 and _is_double(geometry, site))
+    )
+    gauche = _gauche(state)
+    contacts = [Contact("gauche", path.atoms, torsion) for path, torsion in gauche]
+    contacts.extend(_syn_axial(state, placed))
+    contacts.extend(_peri(geometry, gauche))
+    contacts.extend(_geminal(geometry))
+    return Survey(placed, tuple(contacts))
+
+
+def _is_double(geometry: Geometry, site: Site) -> bool:
+    """True for an exocyclic double bond and for substituents in the plane of a flat ring bond."""
+    if site.neighbour < 0 or geometry.structure.bond(site.ring_atom, site.neighbour).order == 2:
+        return True
+    ring = geometry.system.rings[site.ring]
+    return ring.flat_bond is not None and site.place in (ring.flat_bond, (ring.flat_bond + 1) % 6)
+
+
+def _gauche(state: Shapes) -> list[tuple[Path, float]]:
+    """Gauche paths with their torsions."""
+    found = []
+    for path in state.geometry.paths:
+        torsion = wrap(state.rings[path.ring].torsions[path.bond] + path.offset)
+        if is_gauche(torsion):
+            found.append((path, torsion))
+    return found
+
+
+def _syn_axial(state: Shapes, placed: tuple[Placed, ...]) -> list[Contact]:
+    """Pairs of axial sites on ring atoms i and i+2 of one ring, on one face."""
+    axial: dict[tuple[int, int], Placed] = {}
+    for item in placed:
+        if item.position == "axial":
+            axial[(item.site.ring, item.site.place)] = item
+    found = []
+    for (ring, place), first in axial.items():
+        second = axial.get((ring, (place + 2) % 6))
+        if second is None or first.site.face != second.site.face:
+            continue
+        kinds = {first.occupant, second.occupant}
+        if "atom" not in kinds:
+            continue
+        middle = state.geometry.system.rings[ring].atoms[(place + 1) % 6]
+        ends = [first.site.neighbour, second.site.neighbour]
+        atoms = (ends[0] if first.occupant == "atom" else -1, first.site.ring_atom, middle, second.site.ring_atom)
+        atoms = (*atoms, ends[1] if second.occupant == "atom" else -1)
+        kind: ContactKind = (
+            "syn-axial X//H"
+            if "hydrogen" in kinds
+            else "syn-axial X//lone pair"
+            if "lone pair" in kinds
+            else "syn-axial X//Y"
+        )
+        if kind == "syn-axial X//Y" and state.geometry.share_a_ring(*atoms):
+            continue
+        found.append(Contact(kind, atoms))
+    return found
+
+
+def _peri(geometry: Geometry, gauche: list[tuple[Path, float]]) -> list[Contact]:
+    """Chains X-a-b-c-Y over bonds of two rings, folded so that X and Y face each other."""
+    starts: dict[tuple[int, int, int], list[tuple[int, float]]] = {}
+    for path, torsion in gauche:
+        a, b, c, d = path.atoms
+        starts.setdefault((b, c, d), []).append((a, torsion))
+        starts.setdefault((c, b, a), []).append((d, torsion))
+    found = []
+    members = geometry.system.atom_set
+    for (a, b, c), ends in starts.items():
+        if a > c or a not in members or b not in members or c not in members or geometry.share_a_ring(a, b, c):
+            continue
+        if (min(b, c), max(b, c)) not in geometry.ring_bonds:
+            continue
+        for x, first in ends:
+            for y, second in starts.get((c, b, a), ()):
+                if x != y and first * second < 0 and not geometry.share_a_ring(x, a, b, c, y):
+                    found.append(Contact("peri", (x, a, b, c, y)))
+    return found
+
+
+def _geminal(geometry: Geometry) -> list[Contact]:
+    """Two outside groups on one ring atom."""
+    found = []
+    structure, members = geometry.structure, geometry.system.atom_set
+    for atom in geometry.system.atoms:
+        if atom not in geometry.orders:
+            continue
+        outer = [
+            int(n) for n in structure.neighbours[atom] if n not in members and structure.atoms[n].number != 1
+        ]
+        if len(outer) == 2 and len(structure.neighbours[atom]) == 4 and not geometry.share_a_ring(outer[0], atom, outer[1]):
+            found.append(Contact("geminal", (outer[0], atom, outer[1])))
+    return found

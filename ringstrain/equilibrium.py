@@ -1,0 +1,268 @@
+"""Ledgers and a temperature turned into populations, K and free energy differences with their uncertainty.
+
+All states of a labelled structure are counted, one each; symmetry numbers, meso forms and mirror-image chairs
+come out of that count.  Uncertainties follow the random variables of the prices, so that what two states have in
+common cancels.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from ringstrain.ledger import Ledger, Line, Regime, regime_of
+from ringstrain.provenance import Term
+from ringstrain.units import R_KCAL, Z95
+
+Variables = dict[tuple[str, str], tuple[float, float]]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Equilibrium:
+    """The equilibrium between the favoured form and the other ring form.
+
+    Attributes
+    ----------
+    favoured, other
+        Ids of the lowest state of each set.
+    dG_kcal
+        RT ln K, positive [kcal/mol]; None when an unpriced contact decides.
+    uncertainty_kcal
+        One standard uncertainty of dG [kcal/mol].
+    K, K_low, K_high
+        [favoured]/[other] with its 95 % limits; None when an unpriced contact decides.
+    bound
+        ``"at least"``, ``"at most"`` or ``"not determined"`` when a contact has no price, else empty.
+    known_part_kcal
+        Difference of the known lines [kcal/mol].
+    regime
+        Least certain kind of line that does not cancel.
+    """
+
+    favoured: str
+    other: str
+    dG_kcal: float | None
+    uncertainty_kcal: float | None
+    K: float | None
+    K_low: float | None
+    K_high: float | None
+    bound: str = ""
+    known_part_kcal: float = 0.0
+    regime: Regime = "additive"
+
+    def as_dict(self) -> dict[str, object]:
+        """The equilibrium as the JSON of a chairs document shows it."""
+        return {
+            "favoured": self.favoured,
+            "other": self.other,
+            "dG_kcal": self.dG_kcal,
+            "uncertainty_kcal": self.uncertainty_kcal,
+            "K": self.K,
+            "K_low": self.K_low,
+            "K_high": self.K_high,
+            "bound": self.bound,
+            "known_part_kcal": self.known_part_kcal,
+            "regime": self.regime,
+        }
+
+
+@dataclass(frozen=True, slots=True)
+class Population:
+    """Share of a state with its 95 % limits."""
+
+    value: float
+    low: float
+    high: float
+
+
+def variables_of(terms: Sequence[Term]) -> Variables:
+    """Coefficient and standard uncertainty of each random variable [-, kcal/mol]."""
+    table: Variables = {}
+    for term in terms:
+        key = (term.row, term.group)
+        count, _ = table.get(key, (0.0, 0.0))
+        table[key] = (count + term.coefficient, term.sigma)
+    return table
+
+
+def weights(energies_kcal: Sequence[float], temperature_K: float) -> list[float]:
+    """Boltzmann shares of energies [kcal/mol] at a temperature [K]; they sum to 1."""
+    lowest = min(energies_kcal)
+    factors = [math.exp(-(e - lowest) / (R_KCAL * temperature_K)) for e in energies_kcal]
+    total = math.fsum(factors)
+    return [f / total for f in factors]
+
+
+def mixture_energy(energies_kcal: Sequence[float], temperature_K: float) -> float:
+    """Free energy of a set of states, -RT ln of the sum of their Boltzmann factors [kcal/mol]."""
+    lowest = min(energies_kcal)
+    rt = R_KCAL * temperature_K
+    return lowest - rt * math.log(math.fsum(math.exp(-(e - lowest) / rt) for e in energies_kcal))
+
+
+def blended(variables: Sequence[Variables], shares: Sequence[float]) -> Variables:
+    """Variables of a set of states: the share-weighted mean of their coefficients."""
+    table: Variables = {}
+    for own, share in zip(variables, shares, strict=True):
+        for key, (count, sigma) in own.items():
+            before, _ = table.get(key, (0.0, 0.0))
+            table[key] = (before + share * count, sigma)
+    return table
+
+
+def difference_sigma(first: Variables, second: Variables) -> float:
+    """Standard uncertainty of the difference of two sets [kcal/mol]; common terms cancel."""
+    total = 0.0
+    for key in first.keys() | second.keys():
+        a, sigma_a = first.get(key, (0.0, 0.0))
+        b, sigma_b = second.get(key, (0.0, 0.0))
+        total += ((a - b) * max(sigma_a, sigma_b)) ** 2
+    return math.sqrt(total)
+
+
+def differing_lines(first: Ledger, second: Ledger) -> list[Line]:
+    """Lines whose counts differ between two ledgers."""
+    counts: dict[tuple[str, tuple[str, ...], str], float] = {}
+    samples: dict[tuple[str, tuple[str, ...], str], Line] = {}
+    for sign, ledger in ((1, first), (-1, second)):
+        for line in ledger.lines:
+            counts[line.key] = counts.get(line.key, 0.0) + sign * line.count
+            samples[line.key] = line
+    return [samples[key] for key, count in counts.items() if abs(count) > 1e-9]
+
+
+def unknown_difference(favoured: Ledger, other: Ledger) -> str:
+    """What unpriced contacts leave of a difference: empty when they cancel, else which way it is bounded."""
+    lines = [line for line in differing_lines(favoured, other) if line.value_kcal is None]
+    if not lines:
+        return ""
+    if any(line.polar for line in lines):
+        return "not determined"
+    counts = {line.key: line.count for line in favoured.lines}
+    more_favoured = [line for line in lines if counts.get(line.key, 0.0) > _count_of(other, line)]
+    if not more_favoured:
+        return "at least"
+    return "at most" if len(more_favoured) == len(lines) else "not determined"
+
+
+def _count_of(ledger: Ledger, line: Line) -> float:
+    return next((own.count for own in ledger.lines if own.key == line.key), 0.0)
+
+
+def populations(
+    ledgers: Sequence[Ledger],
+    sets: Sequence[int],
+    temperature_K: float,
+    model_terms: dict[str, float],
+    energies_kcal: Sequence[float] | None = None,
+) -> list[Population]:
+    """Share of each state with its 95 % limits.
+
+    Parameters
+    ----------
+    ledgers
+        One per state.
+    sets
+        Number of the set of equivalent ring forms each state belongs to; states of one set share the
+        uncertainty of the model.
+    temperature_K
+        Temperature [K].
+    model_terms
+        Standard uncertainty of the model by regime [kcal/mol].
+    energies_kcal
+        Energies [kcal/mol] when they are not the ledger totals.
+
+    Returns
+    -------
+    list of Population
+        In the order of the states.
+
+    Notes
+    -----
+    Delta method on ln p: d ln p_i = -(dE_i - sum_j p_j dE_j)/RT.
+    """
+    energies = list(energies_kcal) if energies_kcal is not None else [ledger.total_kcal for ledger in ledgers]
+    shares = weights(energies, temperature_K)
+    variables = [variables_of(ledger.terms) for ledger in ledgers]
+    reference = ledgers[0]
+    for number, ledger in enumerate(ledgers):
+        if sets[number] != sets[0]:
+            sigma = model_terms.get(regime_of(differing_lines(reference, ledger)), 0.0)
+            variables[number][("model", str(sets[number]))] = (1.0, sigma)
+    mean = blended(variables, shares)
+    outcome = []
+    for share, own in zip(shares, variables, strict=True):
+        spread = Z95 * difference_sigma(own, mean) / (R_KCAL * temperature_K)
+        factor = math.exp(min(spread, 50.0))
+        outcome.append(Population(share, share / factor, min(1.0, share * factor)))
+    return outcome
+
+
+def compare(
+    favoured: Sequence[tuple[str, Ledger]],
+    other: Sequence[tuple[str, Ledger]],
+    temperature_K: float,
+    model_terms: dict[str, float],
+) -> Equilibrium:
+    """The equilibrium between two sets of states.
+
+    Parameters
+    ----------
+    favoured, other
+        Id and ledger of each state, lowest first.
+    temperature_K
+        Temperature [K].
+    model_terms
+        Standard uncertainty of the model by regime [kcal/mol].
+
+    Returns
+    -------
+    Equilibrium
+        K of the summed populations.
+    """
+    rt = R_KCAL * temperature_K
+    sides = []
+    for group in (favoured, other):
+        energies = [ledger.total_kcal for _, ledger in group]
+        shares = weights(energies, temperature_K)
+        blend = blended([variables_of(ledger.terms) for _, ledger in group], shares)
+        sides.append((mixture_energy(energies, temperature_K), blend))
+    dg = sides[1][0] - sides[0][0]
+    lines = differing_lines(favoured[0][1], other[0][1])
+    regime = regime_of(lines)
+    sigma = math.hypot(difference_sigma(sides[0][1], sides[1][1]), model_terms.get(regime, 0.0))
+    bound = unknown_difference(favoured[0][1], other[0][1])
+    if bound:
+        return Equilibrium(
+            favoured=favoured[0][0],
+            other=other[0][0],
+            dG_kcal=None,
+            uncertainty_kcal=None,
+            K=None,
+            K_low=None,
+            K_high=None,
+            bound=bound,
+            known_part_kcal=dg,
+            regime=regime,
+        )
+    limit = [math.exp(min(max(x / rt, -700.0), 700.0)) for x in (dg, dg - Z95 * sigma, dg + Z95 * sigma)]
+    signs = {line.bound for line in lines if line.bound}
+    return Equilibrium(
+        favoured=favoured[0][0],
+        other=other[0][0],
+        dG_kcal=dg,
+        uncertainty_kcal=sigma,
+        K=limit[0],
+        K_low=limit[1],
+        K_high=limit[2],
+        bound="at least" if signs and _bounds_other(lines, other[0][1], favoured[0][1]) else "",
+        known_part_kcal=dg,
+        regime=regime,
+    )
+
+
+def _bounds_other(lines: Sequence[Line], other: Ledger, favoured: Ledger) -> bool:
+    """True when every lower-bound line weighs on the other side only, so that dG is a lower bound too."""
+    bounded = [line for line in lines if line.bound]
+    return all(_count_of(other, line) > _count_of(favoured, line) for line in bounded)

@@ -1,0 +1,331 @@
+"""Six-membered rings, how they hang together, and what stands on them.
+
+A ring system is a set of fused or bridged blocks of six-membered rings joined by spiro atoms.  Rings joined
+by a bond are separate systems.  Rings of other sizes that share atoms with a system are its companions: they
+restrict its states and their atoms count as substituents.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Literal
+
+import networkx as nx
+
+from ringstrain.errors import OutOfScope
+from ringstrain.structure.records import Structure
+
+AtomKind = Literal["sp3", "sp2", "inverting"]
+RingKind = Literal["chair", "half-chair"]
+#: Elements that may stand in a ring; anything else is a metal or too heavy to price.
+RING_ELEMENTS = frozenset({5, 6, 7, 8, 14, 15, 16, 34})
+_MACROCYCLE = 8
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Ring:
+    """One six-membered ring.
+
+    Attributes
+    ----------
+    atoms
+        Its atoms in ring order.
+    kind
+        ``"chair"`` when all but isolated atoms are tetrahedral, ``"half-chair"`` when one bond is flat.
+    flat_bond
+        Place i of the flat bond (atoms[i], atoms[i+1]) of a half-chair, else None.
+    """
+
+    atoms: tuple[int, ...]
+    kind: RingKind = "chair"
+    flat_bond: int | None = None
+
+    def place(self, atom: int) -> int:
+        """Position of an atom in the ring order."""
+        return self.atoms.index(atom)
+
+
+@dataclass(frozen=True, kw_only=True)
+class RingSystem:
+    """Blocks of six-membered rings joined by spiro atoms.
+
+    Attributes
+    ----------
+    rings
+        The six-membered rings, ordered by their atoms.
+    blocks
+        Ring numbers of each fused or bridged block.
+    atoms
+        All ring atoms, sorted.
+    kinds
+        ``"sp3"``, ``"sp2"`` or ``"inverting"`` (three-coordinate nitrogen) of each ring atom.
+    companions
+        Rings of five or seven members that share atoms with the system.
+    large
+        True when a ring of eight or more members is fused on.
+    """
+
+    rings: tuple[Ring, ...]
+    blocks: tuple[tuple[int, ...], ...]
+    atoms: tuple[int, ...]
+    kinds: dict[int, AtomKind]
+    companions: tuple[tuple[int, ...], ...] = ()
+    large: bool = False
+
+    @cached_property
+    def atom_set(self) -> frozenset[int]:
+        """The ring atoms as a set."""
+        return frozenset(self.atoms)
+
+    @cached_property
+    def rings_of(self) -> dict[int, tuple[int, ...]]:
+        """Ring numbers each ring atom belongs to."""
+        table: dict[int, list[int]] = {}
+        for number, ring in enumerate(self.rings):
+            for atom in ring.atoms:
+                table.setdefault(atom, []).append(number)
+        return {atom: tuple(numbers) for atom, numbers in table.items()}
+
+
+@dataclass(frozen=True, slots=True)
+class Unfit:
+    """A six-membered ring the model does not cover, and why."""
+
+    atoms: tuple[int, ...]
+    reason: str
+
+
+def find_ring_systems(structure: Structure) -> tuple[tuple[RingSystem, ...], tuple[str, ...]]:
+    """Every ring system of a structure that the model covers, ordered by lowest atom, and remarks.
+
+    Parameters
+    ----------
+    structure
+        The molecule.
+
+    Returns
+    -------
+    tuple
+        Ring systems, and one sentence for each six-membered ring left out.
+
+    Raises
+    ------
+    OutOfScope
+        If no six-membered ring can be analysed.
+    """
+    fragment = frozenset(structure.fragment)
+    sixes = _six_rings(structure, fragment)
+    plain = [ring for ring in sixes if not all(structure.atoms[a].aromatic for a in ring)]
+    if not plain:
+        raise OutOfScope(*_why_nothing(structure, sixes, fragment))
+    graph: nx.Graph[int] = nx.Graph()
+    graph.add_nodes_from(range(len(plain)))
+    sets = [frozenset(ring) for ring in plain]
+    for i, first in enumerate(sets):
+        graph.add_edges_from((i, j) for j in range(i) if first & sets[j])
+    systems: list[RingSystem] = []
+    unfit: list[Unfit] = []
+    for members in nx.connected_components(graph):
+        outcome = _build_system(structure, sorted((plain[i] for i in members), key=min))
+        if isinstance(outcome, Unfit):
+            unfit.append(outcome)
+        else:
+            systems.append(outcome)
+    if not systems:
+        worst = min(unfit, key=lambda u: u.atoms)
+        raise OutOfScope(worst.reason, "Ask about a part the model covers.", atoms=worst.atoms)
+    systems.sort(key=lambda system: system.atoms[0])
+    notes = tuple(f"Ring of atoms {_numbers(u.atoms)} left out: {u.reason}" for u in unfit)
+    return tuple(systems), notes
+
+
+def _numbers(atoms: tuple[int, ...]) -> str:
+    """Atom numbers from 1."""
+    return ", ".join(str(a + 1) for a in sorted(atoms))
+
+
+def _why_nothing(
+    structure: Structure, sixes: list[tuple[int, ...]], fragment: frozenset[int]
+) -> tuple[str, str]:
+    """Problem and next step when there is no ring to analyse."""
+    rings = [ring for ring in structure.rings if ring[0] in fragment]
+    if not rings:
+        return "The molecule has no ring.", "Give a molecule with a saturated six-membered ring."
+    if sixes:
+        return (
+            "The six-membered rings are all aromatic and flat.",
+            "Give a molecule with a saturated six-membered ring.",
+        )
+    sizes = ", ".join(str(size) for size in sorted({len(ring) for ring in rings}))
+    word = "a macrocycle" if min(len(ring) for ring in rings) > _MACROCYCLE else f"rings of {sizes} members"
+    return (
+        f"The molecule has {word} but no six-membered ring.",
+        "Give a molecule with a saturated six-membered ring.",
+    )
+
+
+def _six_rings(structure: Structure, fragment: frozenset[int]) -> list[tuple[int, ...]]:
+    """All six-membered rings, those that a smallest set of rings leaves out included."""
+    found = {frozenset(ring): tuple(int(a) for a in ring) for ring in structure.rings if len(ring) == 6}
+    found = {key: ring for key, ring in found.items() if key <= fragment}
+    keys = list(found)
+    bridged: set[int] = set()
+    for i, first in enumerate(keys):
+        for second in keys[:i]:
+            if len(first & second) > 2:
+                bridged |= first | second
+    if bridged:
+        for ring in _cycles_of_six(structure, bridged):
+            found.setdefault(frozenset(ring), ring)
+    return [found[key] for key in sorted(found, key=sorted)]
+
+
+def _cycles_of_six(structure: Structure, atoms: set[int]) -> list[tuple[int, ...]]:
+    """Chordless six-membered cycles within a set of atoms."""
+    cycles = []
+    for start in sorted(atoms):
+        stack: list[tuple[int, ...]] = [(start,)]
+        while stack:
+            path = stack.pop()
+            for n in structure.neighbours[path[-1]]:
+                if n not in atoms or n < start or n in path:
+                    continue
+                longer = (*path, int(n))
+                if len(longer) < 6:
+                    stack.append(longer)
+                elif start in structure.neighbours[n] and longer[1] < longer[-1] and _is_chordless(structure, longer):
+                    cycles.append(longer)
+    return cycles
+
+
+def _is_chordless(structure: Structure, ring: tuple[int, ...]) -> bool:
+    """True when no bond crosses the ring."""
+    members = set(ring)
+    return all(len(members.intersection(structure.neighbours[a])) == 2 for a in ring)
+
+
+def _build_system(structure: Structure, rings: list[tuple[int, ...]]) -> RingSystem | Unfit:
+    """One ring system from its rings, or why it does not fit the model."""
+    typed: list[Ring] = []
+    kinds: dict[int, AtomKind] = {}
+    for atoms in rings:
+        for atom in atoms:
+            if structure.atoms[atom].number not in RING_ELEMENTS:
+                symbol = structure.atoms[atom].element
+                return Unfit(atoms, f"{symbol} in the ring is outside the price tables.")
+            kinds.setdefault(atom, atom_kind(structure, atom))
+        ring = _typed_ring(structure, atoms, kinds)
+        if isinstance(ring, Unfit):
+            return ring
+        typed.append(ring)
+    everything = tuple(sorted(kinds))
+    members = frozenset(everything)
+    companions = []
+    large = False
+    for other in structure.rings:
+        size, shared = len(other), members.intersection(other)
+        if size == 6 or len(shared) < 2:
+            continue
+        if size == 4:
+            return Unfit(everything, "A four-membered ring is fused on; its strain is outside the price tables.")
+        if size in (5, 7):
+            companions.append(tuple(int(a) for a in other))
+        large |= size >= _MACROCYCLE
+    return RingSystem(
+        rings=tuple(typed),
+        blocks=_blocks(typed),
+        atoms=everything,
+        kinds=kinds,
+        companions=tuple(sorted(companions)),
+        large=large,
+    )
+
+
+def _blocks(rings: list[Ring]) -> tuple[tuple[int, ...], ...]:
+    """Ring numbers of each fused or bridged block; single shared atoms are spiro and do not fuse."""
+    graph: nx.Graph[int] = nx.Graph()
+    graph.add_nodes_from(range(len(rings)))
+    sets = [frozenset(ring.atoms) for ring in rings]
+    for i, first in enumerate(sets):
+        graph.add_edges_from((i, j) for j in range(i) if len(first & sets[j]) > 1)
+    return tuple(sorted(tuple(sorted(part)) for part in nx.connected_components(graph)))
+
+
+def atom_kind(structure: Structure, atom: int) -> AtomKind:
+    """Whether a ring atom is tetrahedral, planar or an inverting nitrogen."""
+    record = structure.atoms[atom]
+    neighbours = structure.neighbours[atom]
+    if record.aromatic:
+        return "sp2"
+    if record.number != 16 and record.number != 15:
+        orders = [structure.bond(atom, n).order for n in neighbours]
+        if 2 in orders:
+            return "sp2"
+    if record.number == 5:
+        return "sp2"
+    if record.number == 7 and record.charge == 0:
+        return "sp2" if _is_planar_nitrogen(structure, atom) else "inverting"
+    return "sp3"
+
+
+def _is_planar_nitrogen(structure: Structure, atom: int) -> bool:
+    """True for amide, urethane, sulfonamide, nitroso, enamine and aryl nitrogen."""
+    for n in structure.neighbours[atom]:
+        record = structure.atoms[n]
+        if record.aromatic:
+            return True
+        doubles = [m for m in structure.neighbours[n] if m != atom and structure.bond(n, m).order == 2]
+        if not doubles:
+            continue
+        if record.number in (6, 7) or (record.number in (15, 16) and structure.atoms[doubles[0]].number == 8):
+            return True
+    return False
+
+
+def _typed_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, AtomKind]) -> Ring | Unfit:
+    """The ring with its template: how many flat bonds it has decides."""
+    flat: list[int] = []
+    for i in range(6):
+        a, b = atoms[i], atoms[(i + 1) % 6]
+        bond = structure.bond(a, b)
+        if bond.aromatic or bond.order == 2 or _in_small_ring(structure, a, b) or _is_flat_pair(structure, a, b, kinds):
+            flat.append(i)
+    if not flat:
+        planar = [i for i in range(6) if kinds[atoms[i]] == "sp2"]
+        if len(planar) > 1 and not _spread_apart(planar):
+            return Unfit(atoms, "Two neighbouring ring atoms are flat.")
+        if len(planar) > 2:
+            return Unfit(atoms, "Three or more ring atoms are flat.")
+        return Ring(atoms=atoms)
+    if len(flat) > 1:
+        return Unfit(atoms, "The ring has two or more flat bonds (diene, anhydride, imide, quinone or two fused flat rings).")
+    spare = [i for i in range(6) if kinds[atoms[i]] == "sp2" and i not in (flat[0], (flat[0] + 1) % 6)]
+    if spare:
+        return Unfit(atoms, "The ring has a flat bond and a further flat atom.")
+    return Ring(atoms=atoms, kind="half-chair", flat_bond=flat[0])
+
+
+def _spread_apart(places: list[int]) -> bool:
+    """True when no two places of the ring are neighbours."""
+    return all((j - i) % 6 not in (1, 5) for i in places for j in places if i != j)
+
+
+def _in_small_ring(structure: Structure, a: int, b: int) -> bool:
+    """True when the bond belongs to a three-membered ring."""
+    return bool(set(structure.neighbours[a]) & set(structure.neighbours[b]))
+
+
+def _is_flat_pair(structure: Structure, a: int, b: int, kinds: dict[int, AtomKind]) -> bool:
+    """True for an ester C(=O)-O or amide C(=O)-N bond and for two planar neighbours."""
+    for first, second in ((a, b), (b, a)):
+        if kinds[first] != "sp2" or structure.atoms[first].number != 6:
+            continue
+        number = structure.atoms[second].number
+        carbonyl = any(
+            structure.bond(first, n).order == 2 and structure.atoms[n].number in (7, 8, 16)
+            for n in structure.neighbours[first]
+        )
+        if carbonyl and (number == 8 or (number == 7 and kinds[second] == "sp2")):
+            return True
+    return kinds[a] == "sp2" and kinds[b] == "sp2"
