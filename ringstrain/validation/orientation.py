@@ -17,7 +17,9 @@ from ringstrain.structure.records import Structure
 from ringstrain.tables import Tables
 
 _SIDES = re.compile(r"A: (?P<a>.*?); B: (?P<b>.*)$", re.DOTALL)
-_PLACE = re.compile(r"(?P<both>both )?(?P<name>[A-Za-z0-9()=+#-]+) (?P<where>ax|eq)\b(?: on the (?P<ring>carbocycle|N ring))?")
+_PLACE = re.compile(
+    r"(?P<both>both )?(?P<name>[A-Za-z0-9()=+#-]+) (?P<where>ax|eq)\b(?: on the (?P<ring>carbocycle|N ring))?"
+)
 _SHARED = re.compile(r"\((?P<shared>same ring chair[^)]*)\)")
 _POSITIONS = {"ax": "axial", "eq": "equatorial"}
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import math
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal, get_args
@@ -90,8 +91,6 @@ class MeasuredRow:
     def energy_kcal(self) -> float:
         """B minus A [kcal/mol]; a ratio B to A becomes -RT ln ratio."""
         if self.quantity == "ratio":
-            import math
-
             return -R_KCAL * self.asked_temperature_K * math.log(self.value)
         return to_kcal(self.value, self.unit)
 
@@ -137,9 +136,7 @@ def read_equilibria(folder: str | Path | None = None) -> tuple[MeasuredRow, ...]
             reader = csv.DictReader(stream, restkey="", strict=True)
             for cells in reader:
                 if "" in cells or None in cells.values():
-                    raise TableError(
-                        "the row has more or fewer cells than the header", file=FILE, line=reader.line_num
-                    )
+                    raise TableError("the row has more or fewer cells than the header", file=FILE, line=reader.line_num)
                 rows.append(_row(cells, reader.line_num))
     except FileNotFoundError:
         raise TableError("the file is missing", file=FILE) from None

@@ -34,8 +34,6 @@ from ringstrain.validation.orientation import matching_states, parse_orientation
 from ringstrain.validation.rows import MeasuredRow
 
 Status = Literal["scored", "not determined", "not yet in scope", "left out", "unreadable"]
-#: Ring values of heterocycles and of rings with planar atoms are not priced yet: such rows are listed, not scored.
-RING_VALUES_PRICED = False
 #: Population below which a state's missing prices do not matter [-].
 _RARE = 0.02
 #: A prediction this near a measured value of its own source is that value [kcal/mol].
@@ -228,7 +226,7 @@ def gather(states_by_system: Sequence[Sequence[State]], temperature_K: float, *,
         lines.extend(lowest.lines)
         missing = _missing(lowest)
         uneven |= any(share > _RARE and _missing(own) != missing for share, own in zip(shares, ledgers, strict=True))
-    return Side(energy, bare, variables, Ledger(lines=tuple(lines)), uneven)
+    return Side(energy, bare, variables, Ledger.of(lines), uneven)
 
 
 def _missing(ledger: Ledger) -> list[tuple[tuple[str, tuple[str, ...], str], float]]:
@@ -319,16 +317,7 @@ def _source(name: str, tables: Tables) -> str:
 
 
 def _analyze(row: MeasuredRow, smiles: str, tables: Tables) -> Analysis:
-    analysis = analyze(smiles, temperature_K=row.asked_temperature_K, medium=medium_of(row, tables), tables=tables)
-    if not RING_VALUES_PRICED:
-        for result in analysis.ring_systems:
-            plain = all(
-                analysis.structure.atoms[a].element == "C" and result.system.kinds[a] == "sp3"
-                for a in result.system.atoms
-            )
-            if not plain:
-                raise OutOfScope("heterocycles and rings with planar atoms have no ring values yet")
-    return analysis
+    return analyze(smiles, temperature_K=row.asked_temperature_K, medium=medium_of(row, tables), tables=tables)
 
 
 def _sides(row: MeasuredRow, tables: Tables) -> tuple[tuple[Side, Side], float]:
@@ -381,7 +370,7 @@ def _difference(row: MeasuredRow, a: Side, b: Side, factor: float, tables: Table
 
 
 def _enthalpy_shift(a: Ledger, b: Ledger, tables: Tables) -> float:
-    """What replacing A-values by their enthalpies changes in B minus A, when A-values alone separate the two [kcal/mol]."""
+    """What enthalpies instead of A-values change in B minus A, when A-values alone separate the two [kcal/mol]."""
     lines = difference_lines(a, b)
     if any(line.rule not in ("A-value", "ring fusion gauche") for line in lines):
         return 0.0
