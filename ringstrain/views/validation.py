@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-import json
 from collections.abc import Iterator, Sequence
 from typing import TYPE_CHECKING, Any
 
 from ringstrain.units import KJ_PER_KCAL, Z95
 from ringstrain.validation.score import Score, medium_of
 from ringstrain.validation.summary import ALL, GroupAccuracy, Validation
+from ringstrain.views.as_json import SCHEMA, to_line
 from ringstrain.views.look import Look, Units
 
 if TYPE_CHECKING:
@@ -17,6 +17,8 @@ if TYPE_CHECKING:
 
     from ringstrain.tables import Tables
 
+#: Narrower than this there is no room for the worst row beside the group [characters].
+_WIDE = 76
 _ROW_COLUMNS = (
     "id", "group", "set", "status", "name_a", "name_b", "medium", "temperature_K", "quantity", "bound",
     "measured_{u}", "measured_uncertainty_{u}", "predicted_{u}", "predicted_uncertainty_{u}", "difference_{u}",
@@ -79,7 +81,8 @@ def _accuracy_table(groups: Sequence[GroupAccuracy], look: Look) -> Table:
     table.add_column("group", overflow="fold", min_width=12)
     for name in ("rows", "mean", "rms"):
         table.add_column(name, justify="right", no_wrap=True)
-    table.add_column("worst row", no_wrap=True)
+    if look.width >= _WIDE:
+        table.add_column("worst row", no_wrap=True)
     for name in ("winner", "95 %", "bound"):
         table.add_column(name, justify="right", no_wrap=True)
     for group in groups:
@@ -87,12 +90,13 @@ def _accuracy_table(groups: Sequence[GroupAccuracy], look: Look) -> Table:
             continue
         if group.group == ALL:
             table.add_section()
+        worst = f"{group.worst} {_or_dash(group.worst_kcal, look, signed=True)}" if group.worst else "-"
         table.add_row(
             look.text(group.group),
             str(group.rows),
             _or_dash(group.mean_absolute_kcal, look),
             _or_dash(group.rms_kcal, look),
-            look.text(f"{group.worst} {_or_dash(group.worst_kcal, look, signed=True)}" if group.worst else "-"),
+            *((look.text(worst),) if look.width >= _WIDE else ()),
             f"{group.winners_right}/{group.winners}" if group.winners else "-",
             f"{group.covered}/{group.rows}" if group.rows else "-",
             f"{group.bounds_right}/{group.bounds}" if group.bounds else "-",
@@ -104,7 +108,7 @@ def _sentences(validation: Validation, look: Look) -> Iterator[str]:
     """What the tables do not show."""
     yield (
         f"Energies in {look.unit}. mean: of the absolute difference, predicted less measured; winner: right ones of "
-        "the rows that measured more than 0.3 kcal/mol; 95 %: rows whose measured value agrees within the joint interval; "
+        "the rows that measured more than 0.3 kcal/mol; 95 %: rows that agree within the joint interval; "
         "bound: measured limits whose direction is right."
     )
     both = (*validation.independent, *validation.inputs)
@@ -250,7 +254,7 @@ def validation_json(validation: Validation, tables: Tables, *, version: str, row
         JSON.
     """
     document: dict[str, Any] = {
-        "schema": "ringstrain/1",
+        "schema": SCHEMA,
         "kind": "validate",
         "version": version,
         "tables_revision": tables.revision,
@@ -261,7 +265,7 @@ def validation_json(validation: Validation, tables: Tables, *, version: str, row
     }
     if rows:
         document["rows"] = [_row_document(score, tables) for score in validation.scores]
-    return json.dumps(_rounded(document), ensure_ascii=True, separators=(",", ":"), allow_nan=False)
+    return to_line(document)
 
 
 def _row_document(score: Score, tables: Tables) -> dict[str, Any]:
@@ -303,14 +307,3 @@ def _row_document(score: Score, tables: Tables) -> dict[str, Any]:
             for line in (p.lines if p else ())
         ],
     }
-
-
-def _rounded(item: Any) -> Any:
-    """Floats to six decimals, all the way down."""
-    if isinstance(item, float):
-        return round(item, 6) + 0.0
-    if isinstance(item, dict):
-        return {key: _rounded(value) for key, value in item.items()}
-    if isinstance(item, list):
-        return [_rounded(value) for value in item]
-    return item
