@@ -6,11 +6,13 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
-from ringstrain.contacts import Survey, survey
+from ringstrain.billing import GroupMap, parties_of
+from ringstrain.contacts import Survey
 from ringstrain.equilibrium import Equilibrium, Population, compare, populations
 from ringstrain.errors import MissingValue
-from ringstrain.ledger import GroupMap, Ledger, Line, Regime, make_ledger, regime_of
+from ringstrain.ledger import Ledger, Line, Regime, regime_of
 from ringstrain.provenance import combined_sigma
+from ringstrain.pyranose import chair_form, find_sugar
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
 from ringstrain.states import Shapes
@@ -329,8 +331,15 @@ def _analyze_system(structure: Structure, system: RingSystem, book: PriceBook) -
     sets = _form_sets(priced, copies)
     shares = _shares(priced, sets, book)
     ids = [_letter(i) for i in range(len(priced))]
+    sugar = find_sugar(resolved.geometry, parties_of(resolved.geometry, groups, book))
     states = tuple(
-        _make_state(ids[i], detail, None if copies[i] is None else ids[copies[i] or 0], shares[i])
+        _make_state(
+            ids[i],
+            detail,
+            None if copies[i] is None else ids[copies[i] or 0],
+            shares[i],
+            chair_form(detail.shapes, sugar) if sugar else "",
+        )
         for i, detail in enumerate(priced)
     )
     equilibrium = _equilibrium(priced, ids, sets, copies, book)
@@ -412,8 +421,8 @@ def _substituted_rings(shapes: Shapes) -> tuple[int, ...]:
 def _shares(priced: Sequence[Detail], sets: Sequence[int], book: PriceBook) -> list[Population | None]:
     """Population of each state; none when an unpriced contact decides."""
     ledgers = [detail.ledger for detail in priced]
-    first = sorted(line.key + (line.count,) for line in ledgers[0].unknown)
-    if any(sorted(line.key + (line.count,) for line in ledger.unknown) != first for ledger in ledgers[1:]):
+    first = sorted((*line.key, line.count) for line in ledgers[0].unknown)
+    if any(sorted((*line.key, line.count) for line in ledger.unknown) != first for ledger in ledgers[1:]):
         return [None] * len(priced)
     return list(populations(ledgers, sets, book.conditions.temperature_K, book.tables.model_terms))
 
@@ -444,7 +453,9 @@ def _differs(first: Detail, second: Detail) -> bool:
     return first.shapes.rings != second.shapes.rings
 
 
-def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Population | None) -> State:
+def _make_state(
+    id: str, detail: Detail, equivalent_to: str | None, share: Population | None, form: str
+) -> State:
     placed = [p for p in detail.facts.placed if p.occupant == "atom"]
     axial = sorted({p.site.neighbour for p in placed if p.position == "axial"})
     equatorial = sorted({p.site.neighbour for p in placed if p.position == "equatorial"})
@@ -456,8 +467,10 @@ def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Popul
         "syn_axial_X_lp": "syn-axial X//lone pair",
         "peri": "peri",
         "geminal": "geminal",
+        "eclipsed": "eclipsed",
+        "transannular": "transannular",
     }
-    tally = {kind: 0 for kind in counts.values()}
+    tally = dict.fromkeys(counts.values(), 0)
     for contact in detail.facts.contacts:
         tally[contact.kind] += 1
     nitrogen = _nitrogen(detail)
@@ -479,6 +492,7 @@ def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Popul
         population_high=share.high if share else None,
         lines=ledger.lines,
         sites=tuple((p.site.neighbour, p.site.ring_atom, p.site.ring, p.position) for p in placed),
+        form=form,
         detail=detail,
     )
 

@@ -5,12 +5,21 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
-from ringstrain.geometry import Geometry, Path, Site, is_gauche, wrap
+from ringstrain.geometry import GAUCHE, Geometry, Path, Site, is_gauche, wrap
 from ringstrain.states import Shapes
 from ringstrain.structure.records import Structure
 
 Position = Literal["axial", "equatorial", "isoclinal"]
-ContactKind = Literal["gauche", "syn-axial X//H", "syn-axial X//Y", "syn-axial X//lone pair", "peri", "geminal"]
+ContactKind = Literal[
+    "gauche",
+    "syn-axial X//H",
+    "syn-axial X//Y",
+    "syn-axial X//lone pair",
+    "peri",
+    "geminal",
+    "eclipsed",
+    "transannular",
+]
 Occupant = Literal["atom", "hydrogen", "lone pair"]
 
 
@@ -24,9 +33,10 @@ class Contact:
         What it is.
     atoms
         The path a-b-c-d of a gauche contact, the chain of a syn-axial or peri one (ends first and last; a
-        hydrogen or lone pair is -1), or the two groups of a geminal pair around their ring atom.
+        hydrogen or lone pair is -1), the two groups of a geminal pair around their ring atom, or the two atoms
+        of a bicyclo[3.3.1] skeleton that face each other (transannular).
     torsion
-        Torsion of a gauche path [degree], else 0.
+        Torsion of a gauche or eclipsed path [degree], else 0.
     """
 
     kind: ContactKind
@@ -52,7 +62,7 @@ class Survey:
     placed
         Every exocyclic site of a tetrahedral atom, in ring order.
     contacts
-        Gauche, syn-axial, peri and geminal contacts, each once.
+        All contacts, each once.
     """
 
     placed: tuple[Placed, ...]
@@ -115,6 +125,8 @@ def survey(state: Shapes) -> Survey:
     )
     gauche = _gauche(state)
     contacts = [Contact("gauche", path.atoms, torsion) for path, torsion in gauche]
+    if any(ring.shape != "chair" for ring in state.rings):
+        contacts.extend(_eclipsed(state))
     contacts.extend(_syn_axial(state, placed))
     contacts.extend(_peri(geometry, gauche))
     contacts.extend(_geminal(geometry))
@@ -139,6 +151,19 @@ def _gauche(state: Shapes) -> list[tuple[Path, float]]:
     return found
 
 
+def _eclipsed(state: Shapes) -> list[Contact]:
+    """Outside groups that eclipse each other across a ring bond; only boats and half-chairs have them."""
+    members = state.geometry.system.atom_set
+    found = []
+    for path in state.geometry.paths:
+        if path.atoms[0] in members or path.atoms[3] in members:
+            continue
+        torsion = wrap(state.rings[path.ring].torsions[path.bond] + path.offset)
+        if abs(torsion) < GAUCHE[0]:
+            found.append(Contact("eclipsed", path.atoms, torsion))
+    return found
+
+
 def _syn_axial(state: Shapes, placed: tuple[Placed, ...]) -> list[Contact]:
     """Pairs of axial sites on ring atoms i and i+2 of one ring, on one face."""
     axial: dict[tuple[int, int], Placed] = {}
@@ -155,8 +180,13 @@ def _syn_axial(state: Shapes, placed: tuple[Placed, ...]) -> list[Contact]:
             continue
         middle = state.geometry.system.rings[ring].atoms[(place + 1) % 6]
         ends = [first.site.neighbour, second.site.neighbour]
-        atoms = (ends[0] if first.occupant == "atom" else -1, first.site.ring_atom, middle, second.site.ring_atom)
-        atoms = (*atoms, ends[1] if second.occupant == "atom" else -1)
+        atoms = (
+            ends[0] if first.occupant == "atom" else -1,
+            first.site.ring_atom,
+            middle,
+            second.site.ring_atom,
+            ends[1] if second.occupant == "atom" else -1,
+        )
         kind: ContactKind = (
             "syn-axial X//H"
             if "hydrogen" in kinds
@@ -188,7 +218,20 @@ def _peri(geometry: Geometry, gauche: list[tuple[Path, float]]) -> list[Contact]
             for y, second in starts.get((c, b, a), ()):
                 if x != y and first * second < 0 and not geometry.share_a_ring(x, a, b, c, y):
                     found.append(Contact("peri", (x, a, b, c, y)))
-    return found
+    return _merge_transannular(found, members)
+
+
+def _merge_transannular(found: list[Contact], members: frozenset[int]) -> list[Contact]:
+    """Two ring atoms that face each other along two chains are one transannular contact (bicyclo[3.3.1])."""
+    if len(found) < 2:
+        return found
+    chains: dict[tuple[int, int], int] = {}
+    for contact in found:
+        ends = contact.atoms[0], contact.atoms[-1]
+        chains[min(ends), max(ends)] = chains.get((min(ends), max(ends)), 0) + 1
+    double = {ends for ends, count in chains.items() if count > 1 and set(ends) <= members}
+    kept = [c for c in found if (min(c.atoms[0], c.atoms[-1]), max(c.atoms[0], c.atoms[-1])) not in double]
+    return kept + [Contact("transannular", ends) for ends in sorted(double)]
 
 
 def _geminal(geometry: Geometry) -> list[Contact]:
@@ -198,9 +241,11 @@ def _geminal(geometry: Geometry) -> list[Contact]:
     for atom in geometry.system.atoms:
         if atom not in geometry.orders:
             continue
-        outer = [
-            int(n) for n in structure.neighbours[atom] if n not in members and structure.atoms[n].number != 1
-        ]
-        if len(outer) == 2 and len(structure.neighbours[atom]) == 4 and not geometry.share_a_ring(outer[0], atom, outer[1]):
+        outer = [int(n) for n in structure.neighbours[atom] if n not in members and structure.atoms[n].number != 1]
+        if (
+            len(outer) == 2
+            and len(structure.neighbours[atom]) == 4
+            and not geometry.share_a_ring(outer[0], atom, outer[1])
+        ):
             found.append(Contact("geminal", (outer[0], atom, outer[1])))
     return found

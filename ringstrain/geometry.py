@@ -262,7 +262,7 @@ def flipped(order: tuple[int, int, int, int]) -> tuple[int, int, int, int]:
 
 def with_choices(geometry: Geometry, atoms: tuple[int, ...]) -> list[tuple[Geometry, tuple[int, ...]]]:
     """The geometry with every combination of the given atoms mirrored, and which were."""
-    outcomes = []
+    outcomes: list[tuple[Geometry, tuple[int, ...]]] = []
     for choice in product((False, True), repeat=len(atoms)):
         changed = tuple(a for a, flip in zip(atoms, choice, strict=True) if flip)
         if not changed:

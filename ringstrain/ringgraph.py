@@ -145,9 +145,7 @@ def _numbers(atoms: tuple[int, ...]) -> str:
     return ", ".join(str(a + 1) for a in sorted(atoms))
 
 
-def _why_nothing(
-    structure: Structure, sixes: list[tuple[int, ...]], fragment: frozenset[int]
-) -> tuple[str, str]:
+def _why_nothing(structure: Structure, sixes: list[tuple[int, ...]], fragment: frozenset[int]) -> tuple[str, str]:
     """Problem and next step when there is no ring to analyse."""
     rings = [ring for ring in structure.rings if ring[0] in fragment]
     if not rings:
@@ -167,7 +165,9 @@ def _why_nothing(
 
 def _six_rings(structure: Structure, fragment: frozenset[int]) -> list[tuple[int, ...]]:
     """All six-membered rings, those that a smallest set of rings leaves out included."""
-    found = {frozenset(ring): tuple(int(a) for a in ring) for ring in structure.rings if len(ring) == 6}
+    found: dict[frozenset[int], tuple[int, ...]] = {
+        frozenset(int(a) for a in ring): tuple(int(a) for a in ring) for ring in structure.rings if len(ring) == 6
+    }
     found = {key: ring for key, ring in found.items() if key <= fragment}
     keys = list(found)
     bridged: set[int] = set()
@@ -299,7 +299,9 @@ def _typed_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, A
             return Unfit(atoms, "Three or more ring atoms are flat.")
         return Ring(atoms=atoms)
     if len(flat) > 1:
-        return Unfit(atoms, "The ring has two or more flat bonds (diene, anhydride, imide, quinone or two fused flat rings).")
+        return Unfit(
+            atoms, "The ring has two or more flat bonds (diene, anhydride, imide, quinone or two fused flat rings)."
+        )
     spare = [i for i in range(6) if kinds[atoms[i]] == "sp2" and i not in (flat[0], (flat[0] + 1) % 6)]
     if spare:
         return Unfit(atoms, "The ring has a flat bond and a further flat atom.")

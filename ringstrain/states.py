@@ -171,6 +171,8 @@ def _suits_companions(geometry: Geometry, number: int, shape: RingShape) -> bool
     atoms = geometry.system.rings[number].atoms
     for companion in geometry.system.companions:
         size = len(companion)
+        if not _same_side(geometry, number, companion):
+            return False
         for i in range(size):
             b, c = companion[i], companion[(i + 1) % size]
             if b not in atoms or c not in atoms:
@@ -186,6 +188,20 @@ def _suits_companions(geometry: Geometry, number: int, shape: RingShape) -> bool
             if abs(torsion) >= GAUCHE[1]:
                 return False
     return True
+
+
+def _same_side(geometry: Geometry, number: int, companion: tuple[int, ...]) -> bool:
+    """True unless a companion ring spans two ring atoms that are no neighbours from opposite faces."""
+    ring = geometry.system.rings[number]
+    if len(set(companion).intersection(ring.atoms)) < 3:
+        return True
+    faces = {
+        site.face
+        for place in geometry.sites[number]
+        for site in place
+        if site.neighbour in companion and site.ring_atom in companion and site.face
+    }
+    return len(faces) < 2
 
 
 def combine_blocks(geometry: Geometry, per_block: list[list[dict[int, RingShape]]]) -> list[Shapes]:

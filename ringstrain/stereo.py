@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from ringstrain.closing import Blocks, close_chairs, close_somehow
 from ringstrain.errors import OutOfScope, StereoError
 from ringstrain.geometry import Geometry, neighbour_orders, with_choices
 from ringstrain.ringgraph import RingSystem
-from ringstrain.states import RingShape, close_block
 from ringstrain.structure.records import Structure
 from ringstrain.symmetry import Groups, automorphisms, same_configuration
 
@@ -20,11 +20,13 @@ class Resolved:
     """A configuration that is settled, the chair states of each block, and remarks."""
 
     geometry: Geometry
-    blocks: tuple[tuple[dict[int, RingShape], ...], ...]
+    blocks: Blocks
     notes: tuple[str, ...]
 
 
-def open_centres(structure: Structure, geometry: Geometry, candidates: tuple[int, ...], groups: Groups) -> tuple[int, ...]:
+def open_centres(
+    structure: Structure, geometry: Geometry, candidates: tuple[int, ...], groups: Groups
+) -> tuple[int, ...]:
     """Candidates whose two exocyclic sites differ, so that their configuration can matter."""
     system = geometry.system
     found = []
@@ -67,18 +69,18 @@ def resolve(structure: Structure, system: RingSystem, groups: Groups) -> Resolve
     geometry = Geometry(structure=structure, system=system, orders=orders)
     free = open_centres(structure, geometry, candidates, groups)
     if not free:
-        return Resolved(geometry, _close(geometry), ())
+        return Resolved(geometry, close_chairs(geometry), ())
     if len(free) > MAX_OPEN:
         raise stereo_error(structure, free)
     if len(free) == 1 and _is_lone_centre(geometry, free[0], groups):
-        return Resolved(geometry, _close(geometry), ())
-    chosen: list[tuple[Geometry, tuple[tuple[dict[int, RingShape], ...], ...]]] = []
-    for option, _ in with_choices(geometry, free):
-        blocks = _close(option)
-        if all(blocks):
-            chosen.append((option, blocks))
+        return Resolved(geometry, close_chairs(geometry), ())
+    options = [option for option, _ in with_choices(geometry, free)]
+    caged = _is_caged(geometry, free)
+    chosen = [(option, blocks) for option in options if all(blocks := close_chairs(option))]
+    if not chosen and caged:
+        chosen = [(option, blocks) for option in options if all(blocks := close_somehow(option))]
     if not chosen:
-        if _is_caged(geometry, free):
+        if caged:
             raise OutOfScope(
                 "No combination of chairs closes this ring system.",
                 "Give its configurations, or ask about a part of it.",
@@ -109,12 +111,8 @@ def _is_lone_centre(geometry: Geometry, atom: int, groups: Groups) -> bool:
 
 def _is_caged(geometry: Geometry, free: tuple[int, ...]) -> bool:
     """True when every open centre is a bridgehead whose configuration the cage dictates."""
-    return all(len(geometry.system.rings_of[a]) > 1 for a in free)
-
-
-def _close(geometry: Geometry) -> tuple[tuple[dict[int, RingShape], ...], ...]:
-    """Chair states of each block."""
-    return tuple(tuple(close_block(geometry, block)) for block in geometry.system.blocks)
+    system = geometry.system
+    return all(len(system.rings_of[a]) + sum(a in ring for ring in system.companions) > 1 for a in free)
 
 
 def stereo_error(structure: Structure, atoms: tuple[int, ...]) -> StereoError:
@@ -124,7 +122,8 @@ def stereo_error(structure: Structure, atoms: tuple[int, ...]) -> StereoError:
     spans = [structure.spans[a] for a in atoms] if structure.spans else []
     error = StereoError(
         f"Atom{'s' if many else ''} {numbers} (counted from 1): configuration not given, and the answer depends on it.",
-        f"Give {'these centres' if many else 'the centre'} (use @ or @@), or rank all isomers with `ringstrain isomers`.",
+        f"Give {'these centres' if many else 'the centre'} (use @ or @@), "
+        "or rank all isomers with `ringstrain isomers`.",
         atoms=atoms,
         span=spans[0] if spans else None,
         text=structure.text,

@@ -7,6 +7,7 @@ however the molecule was written.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -17,9 +18,7 @@ from ringstrain.tables.records import Tables
 _HALOGENS = frozenset({9, 17, 35, 53, 85})
 
 
-def describe_group(
-    structure: Structure, first: int, ring_atom: int, system: frozenset[int], tables: Tables
-) -> Group:
+def describe_group(structure: Structure, first: int, ring_atom: int, system: frozenset[int], tables: Tables) -> Group:
     """The group that hangs at ``ring_atom`` through ``first``.
 
     Parameters
@@ -48,6 +47,9 @@ def describe_group(
         hydrogens = structure.atoms[first].hydrogens
         label = f"ring {symbol}" + ("" if not hydrogens else "H" if hydrogens == 1 else f"H{hydrogens}")
         return _group(structure, first, label, code, code, kind, tabulated=False, ring_atom=True)
+    if is_oxo(structure, first, ring_atom):
+        code = hash((8, 2))
+        return _group(structure, first, "oxo", code, code, "oxo", tabulated=True)
     code, mirror, members = branch_code(structure, first, ring_atom, system)
     key = _group_index(tables).get(code) or _group_index(tables).get(mirror)
     kind = classify(structure, first, ring_atom)
@@ -58,8 +60,25 @@ def describe_group(
     return _group(structure, first, label, code, mirror, kind, tabulated=key is not None)
 
 
+def is_oxo(structure: Structure, first: int, root: int) -> bool:
+    """True for a terminal oxygen doubly bound, or singly with a charge to a positive sulfur or phosphorus."""
+    atom = structure.atoms[first]
+    if atom.number != 8 or len(structure.neighbours[first]) > 1:
+        return False
+    ylide = atom.charge < 0 and structure.atoms[root].charge > 0 and structure.atoms[root].number in (15, 16)
+    return structure.bond(first, root).order == 2 or ylide
+
+
 def _group(
-    structure: Structure, first: int, label: str, code: int, mirror: int, kind: str, *, tabulated: bool, ring_atom: bool = False
+    structure: Structure,
+    first: int,
+    label: str,
+    code: int,
+    mirror: int,
+    kind: str,
+    *,
+    tabulated: bool,
+    ring_atom: bool = False,
 ) -> Group:
     """The record, with the properties its first atom decides."""
     atom = structure.atoms[first]
@@ -69,7 +88,8 @@ def _group(
         mirror_code=mirror,
         kind=kind,
         tabulated=tabulated,
-        round=is_round_kind(kind) or (kind in ("tertiary alkyl", "silyl", "germyl", "stannyl") and _is_threefold(structure, first)),
+        round=is_round_kind(kind)
+        or (kind in ("tertiary alkyl", "silyl", "germyl", "stannyl") and _is_threefold(structure, first)),
         polar=is_polar_kind(kind) or (kind.endswith("alkyl") and _halogens_on(structure, first) >= 2),
         donor=atom.number in (7, 8) and atom.hydrogens > 0 and kind in ("oxy", "amino", "amido"),
         acceptor=atom.number in (7, 8) and kind in ("oxy", "amino", "acyloxy", "silyloxy"),
@@ -122,7 +142,7 @@ def classify(structure: Structure, first: int, root: int) -> str:
     return {14: "silyl", 32: "germyl", 50: "stannyl", 5: "boryl"}.get(number, "other")
 
 
-def _classify_carbon(structure: Structure, first: int, outer: list[int], doubles: list[int]) -> str:
+def _classify_carbon(structure: Structure, first: int, outer: Sequence[int], doubles: Sequence[int]) -> str:
     """Class of a carbon group."""
     if structure.atoms[first].aromatic:
         return "aryl"
@@ -134,7 +154,7 @@ def _classify_carbon(structure: Structure, first: int, outer: list[int], doubles
     return ("methyl", "primary alkyl", "secondary alkyl", "tertiary alkyl")[min(len(outer), 3)]
 
 
-def _classify_nitrogen(structure: Structure, first: int, outer: list[int], doubles: list[int]) -> str:
+def _classify_nitrogen(structure: Structure, first: int, outer: Sequence[int], doubles: Sequence[int]) -> str:
     """Class of a nitrogen group."""
     oxygens = [n for n in outer if structure.atoms[n].number == 8 and len(structure.neighbours[n]) == 1]
     if len(oxygens) == 2:
@@ -150,7 +170,7 @@ def _classify_nitrogen(structure: Structure, first: int, outer: list[int], doubl
     return "amino"
 
 
-def _classify_oxygen(structure: Structure, outer: list[int]) -> str:
+def _classify_oxygen(structure: Structure, outer: Sequence[int]) -> str:
     """Class of an oxygen group."""
     if not outer:
         return "oxy"
@@ -205,8 +225,7 @@ def branch_code(
     colours = {a: hash((_own_colour(structure, a), a == first)) for a in members}
     links = {
         a: [
-            (structure.bond(a, n).order if not structure.bond(a, n).aromatic else 4, n)
-            for n in structure.neighbours[a]
+            (structure.bond(a, n).order if not structure.bond(a, n).aromatic else 4, int(n)) for n in structure.neighbours[a]
         ]
         for a in members
     }
@@ -258,7 +277,8 @@ def _local_sign(structure: Structure, atom: int, colours: dict[int, int], ring_a
     if configuration is None:
         return 0
     ranked = sorted(
-        configuration.neighbours, key=lambda n: (3, 0) if n < 0 else (0, 0) if n == ring_atom else (1, colours.get(n, 0))
+        configuration.neighbours,
+        key=lambda n: (3, 0) if n < 0 else (0, 0) if n == ring_atom else (1, colours.get(n, 0)),
     )
     values = [None if n < 0 else colours.get(n, -1) for n in configuration.neighbours]
     if len(set(values)) < len(values):

@@ -44,7 +44,7 @@ def automorphisms(geometry: Geometry, groups: Groups) -> list[dict[int, int]]:
     system, structure = geometry.system, geometry.structure
     members = system.atom_set
     inner = {a: [int(n) for n in structure.neighbours[a] if n in members] for a in system.atoms}
-    colours = {}
+    colours: dict[int, tuple[object, ...]] = {}
     for a in system.atoms:
         record = structure.atoms[a]
         outer = sorted(
@@ -101,9 +101,7 @@ def _extend(
                 stack.append({**images, atom: target})
 
 
-def _keeps_companions(
-    images: dict[int, int], companions: tuple[tuple[int, ...], ...], members: frozenset[int]
-) -> bool:
+def _keeps_companions(images: dict[int, int], companions: tuple[tuple[int, ...], ...], members: frozenset[int]) -> bool:
     """True when every companion ring lands on one."""
     shared = {frozenset(a for a in ring if a in members) for ring in companions}
     return all(frozenset(images[a] for a in part) in shared for part in shared)
@@ -137,9 +135,7 @@ def ring_images(geometry: Geometry, images: dict[int, int]) -> list[RingImage]:
     return outcome
 
 
-def maps_configuration(
-    first: Geometry, second: Geometry, groups: Groups, images: dict[int, int], sign: int
-) -> bool:
+def maps_configuration(first: Geometry, second: Geometry, groups: Groups, images: dict[int, int], sign: int) -> bool:
     """True when an automorphism of the given sign carries the first configuration onto the second."""
     for number, landed in enumerate(ring_images(first, images)):
         turn = sign * landed.direction
@@ -185,21 +181,17 @@ def _site_code(geometry: Geometry, site: Site, groups: Groups, sign: int) -> int
 
 def operations(geometry: Geometry, groups: Groups) -> list[Operation]:
     """Symmetry operations that leave a configuration as it is (up to handedness)."""
-    found = []
+    found: list[Operation] = []
     for images in automorphisms(geometry, groups):
         found.extend(
-            Operation(images, sign)
-            for sign in (1, -1)
-            if maps_configuration(geometry, geometry, groups, images, sign)
+            Operation(images, sign) for sign in (1, -1) if maps_configuration(geometry, geometry, groups, images, sign)
         )
     return found
 
 
 def same_configuration(first: Geometry, second: Geometry, groups: Groups, maps: list[dict[int, int]]) -> bool:
     """True when two configurations of one system are the same compound or mirror images."""
-    return any(
-        maps_configuration(first, second, groups, images, sign) for images in maps for sign in (1, -1)
-    )
+    return any(maps_configuration(first, second, groups, images, sign) for images in maps for sign in (1, -1))
 
 
 def carries(operation: Operation, first: Shapes, second: Shapes) -> bool:

@@ -102,7 +102,7 @@ def _read_smiles(text: str) -> Structure:
     extension = rest[0] if rest else ""
     name = "" if extension.startswith("|") else extension
     _refuse_odd(core, text)
-    parameters = Chem.SmilesParserParams()
+    parameters: Any = Chem.SmilesParserParams()
     parameters.sanitize = False
     parameters.removeHs = False
     parameters.allowCXSMILES = extension.startswith("|")
@@ -160,14 +160,10 @@ def _syntax_error(core: str, text: str) -> ParseError:
             opened.pop()
     if opened:
         place = opened[-1]
-        return ParseError(
-            "A parenthesis is never closed.", "Close the branch.", span=(place, place + 1), text=text
-        )
+        return ParseError("A parenthesis is never closed.", "Close the branch.", span=(place, place + 1), text=text)
     if core.count("[") != core.count("]"):
         place = core.rfind("[")
-        return ParseError(
-            "A square bracket is never closed.", "Close the atom.", span=(place, place + 1), text=text
-        )
+        return ParseError("A square bracket is never closed.", "Close the atom.", span=(place, place + 1), text=text)
     odd = _open_ring_bond(core)
     if odd is not None:
         return ParseError(
@@ -257,9 +253,7 @@ def _finish(structure: Structure) -> Structure:
     chosen = keep[0] if keep else max(parts, key=len)
     left = len(parts) - 1
     note = f"{left} further fragment{'s' if left > 1 else ''} (counter-ion or solvent) set aside."
-    return replace(
-        structure, fragment=tuple(AtomIndex(i) for i in sorted(chosen)), notes=(*structure.notes, note)
-    )
+    return replace(structure, fragment=tuple(AtomIndex(i) for i in sorted(chosen)), notes=(*structure.notes, note))
 
 
 def _fragments(structure: Structure) -> list[set[int]]:
@@ -297,7 +291,5 @@ def read_group(smiles: str) -> tuple[Structure, int]:
     structure = _read_smiles(smiles.strip())
     dummies = [i for i, atom in enumerate(structure.atoms) if atom.number == 0]
     if len(dummies) != 1 or len(structure.neighbours[dummies[0]]) != 1:
-        raise ParseError(
-            "A group needs one attachment point.", "Write it with a star: *C(C)C.", text=smiles
-        )
+        raise ParseError("A group needs one attachment point.", "Write it with a star: *C(C)C.", text=smiles)
     return structure, dummies[0]

@@ -166,7 +166,7 @@ def _attach(mol: Any, ring_atom: int, smiles: str) -> int:
     kind = mol.GetAtomWithIdx(ring_atom)
     kind.SetNoImplicit(False)
     mol.AddBond(ring_atom, offset[first], Chem.BondType.SINGLE)
-    return offset[first]
+    return int(offset[first])
 
 
 def _set_tag(mol: Any, i: int, up: int | None, down: int | None) -> None:

@@ -69,7 +69,9 @@ def make_conditions(tables: Tables, *, temperature_K: float, medium: str) -> Con
         If the temperature is impossible or the medium unknown.
     """
     if not 0 < temperature_K <= 2000:
-        raise UsageError(f"{temperature_K:g} K is no temperature for a solution.", "Use kelvin, above 0 and at most 2000.")
+        raise UsageError(
+            f"{temperature_K:g} K is no temperature for a solution.", "Use kelvin, above 0 and at most 2000."
+        )
     for known in MEDIA:
         if medium.lower() == known:
             return Conditions(

@@ -33,6 +33,7 @@ FAMILIES: dict[str, tuple[str, ...]] = {
     "germyl": ("group 14",),
     "stannyl": ("group 14",),
     "boryl": (),
+    "oxo": (),
     "hydrogen": (),
     "other": (),
 }
@@ -88,9 +89,7 @@ class Group:
 
 def is_polar_kind(kind: str) -> bool:
     """True when groups of this class carry a strong bond dipole at the ring."""
-    return (
-        kind in ("halogen", "linear carbon", "acyl", "ammonio") or not _POLAR_FAMILIES.isdisjoint(FAMILIES[kind])
-    )
+    return kind in ("halogen", "linear carbon", "acyl", "ammonio") or not _POLAR_FAMILIES.isdisjoint(FAMILIES[kind])
 
 
 def is_round_kind(kind: str) -> bool:

@@ -10,7 +10,7 @@ from __future__ import annotations
 import math
 from functools import lru_cache
 
-from ringstrain.provenance import KnownBy, Price, Term, scaled
+from ringstrain.provenance import Price, Term, scaled
 from ringstrain.tables.conditions import Conditions
 from ringstrain.tables.groups import Group
 from ringstrain.tables.records import Claim, Tables, pair_key
@@ -153,7 +153,7 @@ class PriceBook:
     def _vicinal(self, x: Group, y: Group, both_equatorial: bool) -> Price:
         found = self._find("gauche", x, y)
         if found is not None and found[0].claim.form == "ee-ae":
-            chosen, extra, note = found
+            chosen = found[0]
             base = self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
             if base.value_kcal is None:
                 return base
@@ -171,7 +171,9 @@ class PriceBook:
             )
         if found is not None:
             return self._pair_price(x, y, *found)
-        return self._like_pairs("gauche", x, y) or self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
+        return (
+            self._like_pairs("gauche", x, y) or self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
+        )
 
     def syn_axial(self, x: Group, y: Group) -> Price:
         """Whole contact of two groups that stand syn-axial (or peri)."""
@@ -205,11 +207,17 @@ class PriceBook:
         if found is not None:
             chosen, extra, note = found
             claim = chosen.claim
-            names = [stand.name for stand in self._stand_ins(axial)]
+            names = [stand.name for stand in self.stand_ins(axial)]
             forward = claim.groups[0] in names and claim.groups[0] != claim.groups[1]
             if forward or claim.form == "term":
                 return self._pair_price(axial, equatorial, chosen, extra, note)
-            return Price(value_kcal=0.0, row=claim.row, source=claim.source, known_by=claim.known_by, note="reference chair of the pair")
+            return Price(
+                value_kcal=0.0,
+                row=claim.row,
+                source=claim.source,
+                known_by=claim.known_by,
+                note="reference chair of the pair",
+            )
         pair = {axial.kind, equatorial.kind}
         kind = (
             "geminal-aryl"
@@ -250,12 +258,12 @@ class PriceBook:
 
     # ---- fallbacks -----------------------------------------------------------------------------------------
 
-    def _stand_ins(self, group: Group) -> list[_StandIn]:
+    def stand_ins(self, group: Group) -> list[StandIn]:
         """Names a row may call the group, from exact to vague, with the uncertainty each step adds."""
-        names = [_StandIn(group.key, 0.0)] if group.tabulated else []
+        names = [StandIn(group.key, 0.0)] if group.tabulated else []
         names.extend(_kin(self.tables, group))
         vague = names[-1].extra if names else 0.3
-        names.extend(_StandIn(name, vague) for name in group.names if name.startswith("class:"))
+        names.extend(StandIn(name, vague) for name in group.names if name.startswith("class:"))
         return names
 
     def _find(self, table: str, x: Group, y: Group) -> tuple[Selection, float, str] | None:
@@ -263,8 +271,8 @@ class PriceBook:
         medium = self._pair_medium(x, y)
         candidates = sorted(
             (a.extra + b.extra, i + j, a.name, b.name)
-            for i, a in enumerate(self._stand_ins(x))
-            for j, b in enumerate(self._stand_ins(y))
+            for i, a in enumerate(self.stand_ins(x))
+            for j, b in enumerate(self.stand_ins(y))
         )
         for extra, _, first, second in candidates:
             chosen = select(self.tables, table, pair_key(first, second), self.conditions, medium)
@@ -287,7 +295,7 @@ class PriceBook:
         return "protic" if self.conditions.medium == "protic" else "polar"
 
     def _pair_price(self, x: Group, y: Group, chosen: Selection, extra: float, note: str) -> Price:
-        """Price of a pair from a claim: a term as it stands, a raw equilibrium with the ledger's own A-values taken off."""
+        """Price of a pair from a claim: a term as it stands, a raw equilibrium less the ledger's own A-values."""
         claim = chosen.claim
         sigma = math.hypot(chosen.sigma, extra)
         own = Term(claim.row, pair_key(x.key, y.key), 1.0, sigma)
@@ -378,7 +386,7 @@ class PriceBook:
         )
 
 
-class _StandIn:
+class StandIn:
     """A name to look under and the standard uncertainty that using it adds [kcal/mol]."""
 
     __slots__ = ("extra", "name")
@@ -388,14 +396,14 @@ class _StandIn:
         self.extra = extra
 
 
-def _kin(tables: Tables, group: Group) -> list[_StandIn]:
+def _kin(tables: Tables, group: Group) -> list[StandIn]:
     """Stand-ins of kin.csv for a group, by key or by class."""
     wanted = [group.key] if group.tabulated else []
     wanted.append(f"class:{group.kind}" + (" with H" if group.donor else ""))
-    names: list[_StandIn] = []
+    names: list[StandIn] = []
     for who in wanted:
         names.extend(
-            _StandIn(claim.groups[1], claim.uncertainty or 0.0)
+            StandIn(claim.groups[1], claim.uncertainty or 0.0)
             for claim in tables.kin(who)
             if claim.groups[1] != group.key
         )

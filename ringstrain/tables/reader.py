@@ -23,10 +23,35 @@ from ringstrain.tables.records import (
 )
 
 #: Tables of claims; every one has the columns that :func:`_claim` reads.
-CLAIM_FILES = ("avalues", "estimates", "gauche", "syndiaxial", "geminal", "heteroring", "sp2ring", "anomeric", "ringstates", "rules", "kin")
+CLAIM_FILES = (
+    "avalues",
+    "estimates",
+    "gauche",
+    "syndiaxial",
+    "geminal",
+    "heteroring",
+    "sp2ring",
+    "anomeric",
+    "ringstates",
+    "rules",
+    "kin",
+)
 _KNOWN_BY = get_args(KnownBy)
 _MEDIA = ("gas", "nonpolar", "polar", "protic", "any")
-_UNITS = ("kcal/mol", "kJ/mol", "ratio", "percent", "fraction", "cal/(mol K)", "J/(mol K)", "angstrom", "degree", "K", "reeves unit", "")
+_UNITS = (
+    "kcal/mol",
+    "kJ/mol",
+    "ratio",
+    "percent",
+    "fraction",
+    "cal/(mol K)",
+    "J/(mol K)",
+    "angstrom",
+    "degree",
+    "K",
+    "reeves unit",
+    "",
+)
 
 
 def tables_folder() -> Path:
@@ -49,7 +74,9 @@ def _load(folder: Path) -> Tables:
         for line, row in _rows(folder, name):
             claim = _claim(name, line, row)
             if claim.source and claim.source not in sources:
-                raise TableError(f"no source is called {claim.source!r}", file=f"{name}.csv", line=line, column="source")
+                raise TableError(
+                    f"no source is called {claim.source!r}", file=f"{name}.csv", line=line, column="source"
+                )
             claims.append(claim)
     return Tables(
         revision=digest.hexdigest()[:10],
@@ -121,7 +148,9 @@ def _rows(folder: Path, name: str) -> Iterator[tuple[int, dict[str, str]]]:
             reader = csv.DictReader(stream, restkey="", strict=True)
             for row in reader:
                 if "" in row or None in row.values():
-                    raise TableError("the row has more or fewer cells than the header", file=path.name, line=reader.line_num)
+                    raise TableError(
+                        "the row has more or fewer cells than the header", file=path.name, line=reader.line_num
+                    )
                 yield reader.line_num, row
     except FileNotFoundError:
         raise TableError("the file is missing", file=path.name) from None
@@ -154,7 +183,9 @@ def _needed(row: dict[str, str], column: str, file: str, line: int) -> float:
 def _choice(row: dict[str, str], column: str, allowed: tuple[str, ...], file: str, line: int) -> str:
     cell = row.get(column, "")
     if cell not in allowed:
-        raise TableError(f"{cell!r} is none of {', '.join(filter(None, allowed))}", file=f"{file}.csv", line=line, column=column)
+        raise TableError(
+            f"{cell!r} is none of {', '.join(filter(None, allowed))}", file=f"{file}.csv", line=line, column=column
+        )
     return cell
 
 
