@@ -5,10 +5,11 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from typing import TYPE_CHECKING, Any
 
+from ringstrain.analysis import SCHEMA
 from ringstrain.units import KJ_PER_KCAL, Z95
 from ringstrain.validation.score import Score, medium_of
 from ringstrain.validation.summary import ALL, GroupAccuracy, Validation
-from ringstrain.views.as_json import SCHEMA, to_line
+from ringstrain.views.as_json import to_line
 from ringstrain.views.look import Look, Units
 
 if TYPE_CHECKING:
