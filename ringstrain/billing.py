@@ -12,6 +12,7 @@ from ringstrain.contacts import Contact, Placed, Survey
 from ringstrain.geometry import Geometry
 from ringstrain.ledger import Ledger, Line, Rule
 from ringstrain.provenance import Price, Term, scaled
+from ringstrain.ringgraph import Ring
 from ringstrain.ringnames import RingName, name_ring, rename
 from ringstrain.states import Shapes
 from ringstrain.tables.groups import Group
@@ -72,7 +73,20 @@ def _ring_place(geometry: Geometry, name: RingName, ring: int, atom: int) -> Rin
     if symbols[0] == "NR":  # the group on nitrogen is what is being placed, not part of the ring's name
         known = rename(tuple("NH" if i == place else s for i, s in enumerate(name.symbols)))
     bare = rename(tuple("NH" if s == "NR" else s for s in name.symbols))
-    return RingPlace(known.name, known.positions[place], symbols, flat, (bare.name, bare.positions[place]))
+    title = known.name
+    if title == "oxane" and known.positions[place] == 3 and _has_anomeric_oxygen(geometry, record, place):
+        title = "2-oxyoxane"
+    return RingPlace(title, known.positions[place], symbols, flat, (bare.name, bare.positions[place]))
+
+
+def _has_anomeric_oxygen(geometry: Geometry, ring: Ring, place: int) -> bool:
+    """True when the ring atom between this place and the ring oxygen carries an oxygen group."""
+    structure = geometry.structure
+    for step in (1, -1):
+        near, far = ring.atoms[(place + step) % 6], ring.atoms[(place + 2 * step) % 6]
+        if structure.atoms[far].number == 8:
+            return any(structure.atoms[n].number == 8 and n != far for n in structure.neighbours[near])
+    return False
 
 
 @dataclass(slots=True)
@@ -186,6 +200,7 @@ def make_ledger(state: Shapes, facts: Survey, parties: Parties, twisting: frozen
     _charge_shapes(state, parties, bill)
     _charge_companions(state.geometry, parties.book, bill)
     _charge_allylic(state.geometry, facts, parties, bill)
+    _charge_across(facts, parties, bill)
     return bill.settle()
 
 
@@ -461,6 +476,20 @@ def _charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: B
             group = parties.groups[(atom, placed.site.neighbour)]
             price = parties.book.rule("allylic-z", group.key)
             bill.charge("A(1,3) strain", (group.key,), (placed.site.neighbour, int(end)), price)
+
+
+def _charge_across(facts: Survey, parties: Parties, bill: Bill) -> None:
+    """Two axial halogens on opposite atoms of a ring: their dipoles attract."""
+    axial = {(p.site.ring, p.site.place): p.site for p in axial_sites(facts)}
+    for (ring, place), first in axial.items():
+        second = axial.get((ring, place + 3))
+        if second is None or not parties.names[ring].is_carbocycle:
+            continue
+        x = parties.groups[(first.ring_atom, first.neighbour)]
+        y = parties.groups[(second.ring_atom, second.neighbour)]
+        price = parties.book.across(x, y)
+        if price is not None:
+            bill.charge("1,4-diaxial dipoles", pair_of(x.key, y.key), (first.neighbour, second.neighbour), price)
 
 
 def _faces_side(geometry: Geometry, flat: int, end: int, side: int) -> bool:

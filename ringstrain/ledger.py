@@ -21,6 +21,7 @@ Rule = Literal[
     "C3/C7 endo",
     "N-H axial",
     "A(1,3) strain",
+    "1,4-diaxial dipoles",
     "trans-fused five-ring",
     "ring shape",
     "pyranose set",

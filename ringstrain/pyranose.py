@@ -65,9 +65,13 @@ def find_sugar(geometry: Geometry, parties: Parties) -> Sugar | None:
     letters = {atom: _letter(geometry, parties, atom) for atom in ring.atoms}
     if name == "cyclohexane":
         oxygens = sum(len(letter) for letter in letters.values() if letter.strip("C"))
-        return Sugar(ring.atoms, False) if "X" not in "".join(letters.values()) and oxygens >= _CYCLITOL_OXYGENS and all(
-            len(letter) < 2 for letter in letters.values()
-        ) else None
+        return (
+            Sugar(ring.atoms, False)
+            if "X" not in "".join(letters.values())
+            and oxygens >= _CYCLITOL_OXYGENS
+            and all(len(letter) < 2 for letter in letters.values())
+            else None
+        )
     if name != "oxane":
         return None
     oxygen = next(i for i, a in enumerate(ring.atoms) if geometry.structure.atoms[a].number == 8)
@@ -117,15 +121,14 @@ def sugar_ledger(state: Shapes, facts: Survey, parties: Parties, sugar: Sugar) -
     Ledger
         Lines of the rule ``pyranose set``.
     """
-    positions = {
-        p.site.ring_atom: (p.site.neighbour, p.position) for p in facts.placed if p.occupant == "atom"
-    }
+    positions = {p.site.ring_atom: (p.site.neighbour, p.position) for p in facts.placed if p.occupant == "atom"}
     letters = {atom: _letter(state.geometry, parties, atom).replace("G", "O") for atom in sugar.order}
     axial = {atom: where == "axial" for atom, (_, where) in positions.items()}
     bill = Bill()
     carbons = sugar.order[:5] if sugar.is_pyranose else sugar.order
     _charge_axial(bill, parties.book, carbons, letters, axial, positions)
     _charge_vicinal(bill, parties.book, sugar, carbons, letters, axial, positions)
+    _charge_glycoside(bill, parties, sugar, axial, positions)
     return bill.settle()
 
 
@@ -184,6 +187,19 @@ def _charge_vicinal(
     if second_axial:
         row = "angyal-anomeric-o2-o3-ax" if third_axial else "angyal-anomeric-o2-ax"
     _put(bill, book, row, (positions[carbons[0]][0],))
+
+
+def _charge_glycoside(
+    bill: Bill, parties: Parties, sugar: Sugar, axial: dict[int, bool], positions: _Positions
+) -> None:
+    """An equatorial O-1 that carries carbon costs more than a hydroxyl; how much depends on the solvent."""
+    first = sugar.order[0]
+    if not sugar.is_pyranose or axial[first] or parties.groups[(first, positions[first][0])].key == "hydroxy":
+        return
+    conditions = parties.book.conditions
+    alcohol = conditions.solvent not in ("", "water")
+    price = parties.book.rule("glycoside-alcohol" if alcohol else "glycoside-water", "glycoside")
+    bill.charge("pyranose set", ("glycoside",), (positions[first][0],), price)
 
 
 def _put(bill: Bill, book: PriceBook, row: str, atoms: tuple[int, ...]) -> None:

@@ -151,6 +151,9 @@ class PriceBook:
         return price
 
     def _vicinal(self, x: Group, y: Group, both_equatorial: bool) -> Price:
+        mixed = self._like_pairs("gauche", x, y)
+        if mixed is not None:
+            return mixed
         found = self._find("gauche", x, y)
         if found is not None and found[0].claim.form == "ee-ae":
             chosen = found[0]
@@ -171,9 +174,7 @@ class PriceBook:
             )
         if found is not None:
             return self._pair_price(x, y, *found)
-        return (
-            self._like_pairs("gauche", x, y) or self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
-        )
+        return self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
 
     def syn_axial(self, x: Group, y: Group) -> Price:
         """Whole contact of two groups that stand syn-axial (or peri)."""
@@ -236,6 +237,21 @@ class PriceBook:
             estimated=True,
             note="no row for this pair on one carbon: taken as zero, wide",
         )
+
+    def across(self, x: Group, y: Group) -> Price | None:
+        """Dipole term of two axial halogens on opposite ring atoms, or None when no row covers the pair.
+
+        References
+        ----------
+        ``transannular.csv``.
+        """
+        found = self._find("transannular", x, y) if x.kind == y.kind == "halogen" else None
+        if found is None:
+            return None
+        chosen, extra, note = found
+        if chosen.borrowed:
+            extra = math.hypot(extra, self.tables.row("rules/combining-transannular").uncertainty or 0.0)
+        return self._pair_price(x, y, chosen, extra, note)
 
     def rule(self, name: str, group: str) -> Price:
         """A value of rules.csv, applied to one kind of place.
@@ -301,7 +317,12 @@ class PriceBook:
         own = Term(claim.row, pair_key(x.key, y.key), 1.0, sigma)
         value = energy_of(claim)
         terms: tuple[Term, ...] = (own,)
-        share = {"trans-1,2": (1.0, 1.0), "cis-1,3": (-0.5, -0.5), "geminal": (-1.0, 1.0)}.get(claim.form)
+        share = {
+            "trans-1,2": (1.0, 1.0),
+            "cis-1,3": (-0.5, -0.5),
+            "trans-1,4": (-1.0, -1.0),
+            "geminal": (-1.0, 1.0),
+        }.get(claim.form)
         if share is not None:
             first, second = claim.groups[0], claim.groups[-1]
             if claim.own_a is not None:

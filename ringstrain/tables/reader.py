@@ -29,6 +29,7 @@ CLAIM_FILES = (
     "gauche",
     "syndiaxial",
     "geminal",
+    "transannular",
     "heteroring",
     "sp2ring",
     "anomeric",

@@ -196,9 +196,13 @@ def _scaled_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
         note = f"{place.ring}, position {place.position}: A-value times {factor:.2f}, what methyl shows there"
     else:
         spread = book.rule("ring-hetero", group.key)
-        anomeric = place.has_near("O") and group.kind in ("oxy", "acyloxy", "silyloxy", "halogen", "sulfanyl")
+        anomeric = place.has_near("O", "S") and group.kind in ("oxy", "acyloxy", "silyloxy", "halogen", "sulfanyl")
         shift = book.rule("anomeric-shift", group.key) if anomeric else None
         value = own.value_kcal + ((shift.value_kcal or 0.0) if shift else 0.0)
+        if group.kind in ("sulfinyl", "sulfonyl"):
+            value += (book.rule("beta-oxygen-shift", group.key).value_kcal or 0.0) * sum(
+                place.symbols[d] == "O" for d in (2, 4)
+            )
         terms = (*own.terms, *spread.terms)
         shifted = " and an anomeric shift" if shift else ""
         note = f"{place.ring}, position {place.position}: cyclohexane A-value{shifted}, wide"

@@ -14,6 +14,7 @@ USABLE_FORMS: dict[str, frozenset[str]] = {
     "gauche": frozenset({"term", "trans-1,2", "ee-ae", "ring-fusion"}),
     "syndiaxial": frozenset({"term", "cis-1,3"}),
     "geminal": frozenset({"term", "geminal"}),
+    "transannular": frozenset({"trans-1,4"}),
     "heteroring": frozenset({"value"}),
     "sp2ring": frozenset({"", "value"}),
     "anomeric": frozenset({"value"}),
