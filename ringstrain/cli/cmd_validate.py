@@ -48,7 +48,8 @@ def validate(
     if output.format == "json":
         output.line(views.validation_json(outcome, tables, version=__version__, rows=rows))
     elif output.format == "plain":
-        output.line(views.rows_plain(outcome, tables, units) if rows else views.accuracy_plain(outcome, units))
+        chosen = output.look.units
+        output.line(views.rows_plain(outcome, tables, chosen) if rows else views.accuracy_plain(outcome, chosen))
     else:
         if rows:
             output.console.print(views.rows_view(outcome, tables, output.look))

@@ -68,7 +68,7 @@ class _Groups:
         if entry is not None:
             return entry.key
         close = get_close_matches(name, self.tables.group_names(), n=2, cutoff=0.6)
-        hint = f"; did you mean {' or '.join(close)}?" if close else "; give a key, an alias or a SMILES such as *C(C)C"
+        hint = f"; did you mean {' or '.join(close)}" if close else "; give a key, an alias or a SMILES such as *C(C)C"
         raise ValueError(f"no group is called {name!r}{hint}")
 
     def _key_of_smiles(self, smiles: str) -> str:
@@ -237,7 +237,7 @@ def _ring_faults(cells: dict[str, str], line: int, base: Tables) -> Iterator[_Fa
     ring, position = cells.get("ring", ""), cells.get("position", "")
     if ring and ring not in rings:
         close = get_close_matches(ring, rings, n=2, cutoff=0.6)
-        hint = f"did you mean {' or '.join(close)}?" if close else f"known are {', '.join(rings)}"
+        hint = f"did you mean {' or '.join(close)}" if close else f"known are {', '.join(rings)}"
         yield _Fault(line, "ring", f"no ring is called {ring!r}; {hint}")
     if position and position not in tuple("123456"):
         yield _Fault(line, "position", f"{position!r} is no ring position from 1 to 6")
