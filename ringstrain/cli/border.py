@@ -1,0 +1,137 @@
+"""The border between the library and the shell: errors become three lines and an exit code."""
+
+from __future__ import annotations
+
+import os
+import sys
+from collections.abc import Sequence
+from typing import Any
+
+import typer
+
+from ringstrain.cli.console import make_console, make_look, prepare_streams, silence
+from ringstrain.errors import RingstrainError
+
+OUR_BUG, USAGE, INTERRUPTED = 1, 2, 130
+HELP_NAMES = ("-h", "--help")
+_COMPLETION_VARIABLE = "_RINGSTRAIN_COMPLETE"
+
+
+def exit_code_of(error: BaseException) -> int:
+    """Exit code of an error: what the contract says for ours, 130 for Ctrl-C, 1 for a bug."""
+    if isinstance(error, RingstrainError):
+        return error.exit_code
+    if isinstance(error, KeyboardInterrupt | typer.Abort):
+        return INTERRUPTED
+    return OUR_BUG
+
+
+def run(arguments: Sequence[str]) -> int:
+    """Run the command line and return the exit code; nothing but Python's own exit escapes.
+
+    Parameters
+    ----------
+    arguments
+        Command line without the program name.
+    """
+    prepare_streams()
+    try:
+        code = _run(list(arguments))
+        sys.stdout.flush()
+    except BrokenPipeError:
+        silence(sys.stdout)
+        return 0
+    except KeyboardInterrupt:
+        _say(["", "Interrupted."])
+        return INTERRUPTED
+    return code
+
+
+def _run(arguments: list[str]) -> int:
+    """Parse, run, and turn what goes wrong into a message."""
+    from ringstrain.cli.app import build_app
+
+    debug = "--debug" in arguments
+    try:
+        command: Any = typer.main.get_command(build_app(arguments))
+        _take_text_as_it_is(command)
+        if _COMPLETION_VARIABLE in os.environ:
+            command.main(prog_name="ringstrain")
+        with command.make_context("ringstrain", arguments) as context:
+            outcome = command.invoke(context)
+        return outcome if isinstance(outcome, int) else 0
+    except typer.Exit as stop:
+        return int(stop.exit_code)
+    except typer.Abort:
+        return INTERRUPTED
+    except RingstrainError as error:
+        complain(error)
+        return exit_code_of(error)
+    except (BrokenPipeError, KeyboardInterrupt):
+        raise
+    except Exception as error:
+        if hasattr(error, "format_message"):
+            return _usage(error)
+        if debug:
+            raise
+        _say(
+            [
+                "Something went wrong inside ringstrain: our bug, not a fault of your input.",
+                "Run the same command with --debug and send us what it prints.",
+            ]
+        )
+        return OUR_BUG
+
+
+class _AsItIs:
+    """Hands the words of an option on unchanged."""
+
+    def coerce(self, value: Any, param: Any, ctx: Any) -> Any:
+        """The value, an empty list when a repeated one is missing."""
+        if value is None:
+            return [] if param.nargs == -1 or param.multiple else None
+        return list(value) if isinstance(value, tuple) else value
+
+
+def _take_text_as_it_is(command: Any) -> None:
+    """Spare flags and plain text typer's conversion, whose library takes longer to load than an answer takes."""
+    for child in (command, *getattr(command, "commands", {}).values()):
+        for parameter in child.get_params(typer.Context(child, help_option_names=list(HELP_NAMES))):
+            annotation = getattr(getattr(parameter, "type_descriptor", None), "annotation", None)
+            if annotation in (str, list[str], bool) and getattr(parameter, "_runtime_param", 0) is None:
+                parameter._runtime_param = _AsItIs()
+
+
+def _usage(error: Any) -> int:
+    """A command line that typer refuses: its sentence, then where the help is."""
+    context = getattr(error, "ctx", None)
+    if type(error).__name__ == "NoArgsIsHelpError" and context is not None:
+        sys.stderr.write(context.get_help() + "\n")
+        return USAGE
+    path = context.command_path if context is not None else "ringstrain"
+    message = " ".join(str(error.format_message()).split())
+    _say([message if message.endswith((".", "?", "!")) else f"{message}.", f"`{path} --help` lists what it takes."])
+    return USAGE
+
+
+def complain(error: RingstrainError, asked: str = "") -> None:
+    """Write an error to standard error in three lines.
+
+    Parameters
+    ----------
+    error
+        What went wrong.
+    asked
+        The input, for errors that do not carry it.
+    """
+    from ringstrain.views.faults import fault_lines
+
+    _say(fault_lines(error, asked))
+
+
+def _say(lines: Sequence[str]) -> None:
+    """Lines on standard error, without wrapping, so that carets stay under their atoms."""
+    console = make_console(sys.stderr)
+    look = make_look(console)
+    for line in lines:
+        console.print(look.text(line), soft_wrap=True)
