@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 from ringstrain.analysis import analyze
 from ringstrain.errors import InputError
-from ringstrain.tables import load_tables
+from ringstrain.tables import Tables, load_tables
 from ringstrain.tables.user import YOUR_SOURCE, load_user_tables
 
 
@@ -90,6 +90,21 @@ def test_own_syn_axial_contact_is_the_whole_contact(tmp_path: Path) -> None:
     flipped = next(state for state in states if state.shapes == ("chair",) and len(state.axial) == 2)
     # Two A-values (booth-everett-1980, 1.74) and the contact less the two X//H shares it replaces.
     assert flipped.energy_kcal == pytest.approx(2 * 1.74 + 4.0 - 1.74, abs=0.02)
+
+
+@pytest.mark.parametrize(("order", "sign"), [("ethyl,methyl", 1), ("methyl,ethyl", -1)])
+def test_own_geminal_value_weighs_on_the_chair_with_the_first_group_axial(
+    tmp_path: Path, order: str, sign: int
+) -> None:
+    def gap(tables: Tables) -> float:
+        states = analyze("CCC1(C)CCCCC1", tables=tables).ring_systems[0].states
+        axial = {state.axial[0]: state.energy_kcal for state in states if state.shapes == ("chair",)}
+        # Atom 1 is the CH2 of ethyl, atom 3 the methyl.
+        return axial[1] - axial[3]
+
+    text = f"table,group_x,group_y,value\ngeminal,{order},1.5\n"
+    own = load_user_tables(write(tmp_path, text), load_tables())
+    assert gap(own) - gap(load_tables()) == pytest.approx(sign * 1.5)
 
 
 def test_own_heteroring_value(tmp_path: Path) -> None:

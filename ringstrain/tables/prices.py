@@ -209,8 +209,8 @@ class PriceBook:
             chosen, extra, note = found
             claim = chosen.claim
             names = [stand.name for stand in self.stand_ins(axial)]
-            forward = claim.groups[0] in names and claim.groups[0] != claim.groups[1]
-            if forward or claim.form == "term":
+            first, second = (names.index(g) if g in names else len(names) for g in claim.groups)
+            if first < second or (claim.form == "term" and claim.groups[0] == claim.groups[1]):
                 return self._pair_price(axial, equatorial, chosen, extra, note)
             return Price(
                 value_kcal=0.0,
