@@ -13,13 +13,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from ringstrain.billing import Bill, Parties
+from ringstrain.bill import Bill, Parties
 from ringstrain.contacts import Survey
 from ringstrain.geometry import Geometry
 from ringstrain.ledger import Ledger
 from ringstrain.provenance import Price, Term
 from ringstrain.states import Shapes
-from ringstrain.tables.prices import PriceBook, energy_of
+from ringstrain.tables.kinship import energy_of
+from ringstrain.tables.prices import PriceBook
 
 _CARBON_KEYS = frozenset({"methyl", "hydroxymethyl"})
 _CYCLITOL_OXYGENS = 3

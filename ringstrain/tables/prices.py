@@ -13,12 +13,9 @@ from functools import lru_cache
 from ringstrain.provenance import Price, Term, scaled
 from ringstrain.tables.conditions import Conditions
 from ringstrain.tables.groups import Group
+from ringstrain.tables.kinship import StandIn, energy_of, kin_of
 from ringstrain.tables.records import Claim, Tables, pair_key
 from ringstrain.tables.select import Selection, select
-from ringstrain.units import R_KCAL, to_kcal
-
-_REFERENCE_T = 298.15
-_FAR_IN_KELVIN = 60.0
 
 
 class PriceBook:
@@ -277,7 +274,7 @@ class PriceBook:
     def stand_ins(self, group: Group) -> list[StandIn]:
         """Names a row may call the group, from exact to vague, with the uncertainty each step adds."""
         names = [StandIn(group.key, 0.0)] if group.tabulated else []
-        names.extend(_kin(self.tables, group))
+        names.extend(kin_of(self.tables, group))
         vague = names[-1].extra if names else 0.3
         names.extend(StandIn(name, vague) for name in group.names if name.startswith("class:"))
         return names
@@ -405,49 +402,6 @@ class PriceBook:
             polar=x.polar and y.polar,
             note=f"no {what} is tabulated for this pair",
         )
-
-
-class StandIn:
-    """A name to look under and the standard uncertainty that using it adds [kcal/mol]."""
-
-    __slots__ = ("extra", "name")
-
-    def __init__(self, name: str, extra: float) -> None:
-        self.name = name
-        self.extra = extra
-
-
-def _kin(tables: Tables, group: Group) -> list[StandIn]:
-    """Stand-ins of kin.csv for a group, by key or by class."""
-    wanted = [group.key] if group.tabulated else []
-    wanted.append(f"class:{group.kind}" + (" with H" if group.donor else ""))
-    names: list[StandIn] = []
-    for who in wanted:
-        names.extend(
-            StandIn(claim.groups[1], claim.uncertainty or 0.0)
-            for claim in tables.kin(who)
-            if claim.groups[1] != group.key
-        )
-    return names
-
-
-def energy_of(claim: Claim) -> float:
-    """A claim's value in kcal/mol; ratios and fractions of the axial form become free energies.
-
-    Raises
-    ------
-    ValueError
-        If the claim has no value or is no energy.
-    """
-    if claim.value is None:
-        raise ValueError(f"{claim.row} has no value")
-    temperature = claim.temperature_K or _REFERENCE_T
-    if claim.unit == "ratio":
-        return -R_KCAL * temperature * math.log(claim.value)
-    if claim.unit in ("fraction", "percent"):
-        x = claim.value / (100.0 if claim.unit == "percent" else 1.0)
-        return -R_KCAL * temperature * math.log((1 - x) / x)
-    return to_kcal(claim.value, claim.unit)
 
 
 @lru_cache(maxsize=64)

@@ -11,7 +11,8 @@ from dataclasses import dataclass
 
 from ringstrain.provenance import Price, Term, scaled
 from ringstrain.tables.groups import FAMILIES, Group
-from ringstrain.tables.prices import PriceBook, energy_of
+from ringstrain.tables.kinship import energy_of
+from ringstrain.tables.prices import PriceBook
 from ringstrain.tables.records import Claim
 from ringstrain.tables.select import USABLE_FORMS, Selection
 

@@ -54,7 +54,7 @@ def select(tables: Tables, table: str, key: str, conditions: Conditions, medium:
     for claim in usable:
         if claim.known_by == "yours" and claim.medium in ("any", wanted):
             return Selection(claim, claim.uncertainty or 0.0)
-    if conditions.solvent and medium is None:
+    if conditions.solvent:
         own = [claim for claim in usable if claim.solvent == conditions.solvent and not claim.bound]
         if own:
             best = min(own, key=lambda c: (c.known_by != "read", c.uncertainty is None, c.line))

@@ -1,0 +1,167 @@
+"""Who is billed and the bill itself: groups, ring names, prices, and lines piling up."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass, field
+
+from ringstrain.contacts import Contact, Placed, Survey
+from ringstrain.geometry import Geometry
+from ringstrain.ledger import Ledger, Line, Rule
+from ringstrain.provenance import Price
+from ringstrain.ringgraph import Ring
+from ringstrain.ringnames import RingName, name_ring, rename
+from ringstrain.tables.groups import Group
+from ringstrain.tables.prices import PriceBook
+from ringstrain.tables.ring_prices import RingPlace
+
+GroupMap = dict[tuple[int, int], Group]
+
+
+@dataclass(frozen=True, slots=True)
+class Parties:
+    """Who is concerned: the same for all states of a ring system.
+
+    Attributes
+    ----------
+    groups
+        Group on each exocyclic site, ring neighbours included, by (ring atom, neighbour).
+    names
+        Name of each ring.
+    book
+        Prices under the asked conditions.
+    """
+
+    groups: GroupMap
+    names: tuple[RingName, ...]
+    book: PriceBook
+    _places: dict[tuple[int, int], RingPlace] = field(default_factory=dict)
+
+    def place(self, geometry: Geometry, ring: int, atom: int) -> RingPlace:
+        """A ring atom's position as the price tables see it."""
+        found = self._places.get((ring, atom))
+        if found is None:
+            found = self._places[(ring, atom)] = _ring_place(geometry, self.names[ring], ring, atom)
+        return found
+
+
+def parties_of(geometry: Geometry, groups: GroupMap, book: PriceBook) -> Parties:
+    """Names and prices for the states of one ring system."""
+    names = tuple(
+        name_ring(geometry.structure, geometry.system, number) for number in range(len(geometry.system.rings))
+    )
+    return Parties(groups, names, book)
+
+
+def _ring_place(geometry: Geometry, name: RingName, ring: int, atom: int) -> RingPlace:
+    """Position, and the symbols around the ring seen from there."""
+    record = geometry.system.rings[ring]
+    place = record.place(atom)
+    symbols = tuple(name.symbols[(place + i) % 6] for i in range(6))
+    flat = 0
+    if record.flat_bond is not None:
+        ends = (record.flat_bond, (record.flat_bond + 1) % 6)
+        flat = min(min((place - e) % 6, (e - place) % 6) for e in ends)
+    known = name
+    if symbols[0] == "NR":  # the group on nitrogen is what is being placed, not part of the ring's name
+        known = rename(tuple("NH" if i == place else s for i, s in enumerate(name.symbols)))
+    bare = rename(tuple("NH" if s == "NR" else s for s in name.symbols))
+    title = known.name
+    if title == "oxane" and known.positions[place] == 3 and _has_anomeric_oxygen(geometry, record, place):
+        title = "2-oxyoxane"
+    return RingPlace(title, known.positions[place], symbols, flat, (bare.name, bare.positions[place]))
+
+
+def _has_anomeric_oxygen(geometry: Geometry, ring: Ring, place: int) -> bool:
+    """True when the ring atom between this place and the ring oxygen carries an oxygen group."""
+    structure = geometry.structure
+    for step in (1, -1):
+        near, far = ring.atoms[(place + step) % 6], ring.atoms[(place + 2 * step) % 6]
+        if structure.atoms[far].number == 8:
+            return any(structure.atoms[n].number == 8 and n != far for n in structure.neighbours[near])
+    return False
+
+
+@dataclass(slots=True)
+class _Entry:
+    rule: Rule
+    groups: tuple[str, ...]
+    price: Price
+    count: float = 0.0
+    atoms: list[tuple[int, ...]] = field(default_factory=list)
+    covers: list[Contact] = field(default_factory=list)
+
+
+@dataclass(slots=True)
+class Bill:
+    """Lines being gathered; equal prices of equal groups pile up on one line."""
+
+    entries: dict[tuple[str, tuple[str, ...], str, float | None], _Entry] = field(default_factory=dict)
+    covered: set[Contact] = field(default_factory=set)
+
+    def charge(
+        self,
+        rule: Rule,
+        groups: tuple[str, ...],
+        atoms: tuple[int, ...],
+        price: Price,
+        covers: Iterable[Contact] = (),
+        count: float = 1.0,
+    ) -> None:
+        """Put a price on the bill; covering a contact twice is a mistake of ours."""
+        value = None if price.value_kcal is None else round(price.value_kcal, 9)
+        key = (rule, groups, price.row, value)
+        entry = self.entries.get(key)
+        if entry is None:
+            entry = self.entries[key] = _Entry(rule, groups, price)
+        entry.count += count
+        for contact in covers:
+            if contact in self.covered:
+                raise AssertionError(f"{contact} is charged twice")
+            self.covered.add(contact)
+            entry.covers.append(contact)
+        if atoms not in entry.atoms:
+            entry.atoms.append(atoms)
+
+    def settle(self) -> Ledger:
+        """The finished ledger."""
+        return Ledger.of(_line(entry) for entry in self.entries.values())
+
+
+def _line(entry: _Entry) -> Line:
+    price = entry.price
+    return Line(
+        rule=entry.rule,
+        groups=entry.groups,
+        atoms=tuple(entry.atoms),
+        count=entry.count,
+        value_kcal=price.value_kcal,
+        terms=price.terms,
+        row=price.row,
+        source=price.source,
+        known_by=price.known_by,
+        estimated=price.estimated,
+        polar=price.polar,
+        bound=price.bound,
+        note=price.note,
+        covers=tuple(entry.covers),
+    )
+
+
+def pair_of(first: str, second: str) -> tuple[str, str]:
+    """Two group keys in a fixed order."""
+    return (first, second) if first <= second else (second, first)
+
+
+def shared_ring(geometry: Geometry, *atoms: int) -> int | None:
+    """A six-membered ring that holds all these atoms."""
+    rings_of = geometry.system.rings_of
+    for number in rings_of.get(atoms[0], ()):
+        if all(number in rings_of.get(atom, ()) for atom in atoms[1:]):
+            return number
+    return None
+
+
+def axial_sites(facts: Survey) -> tuple[Placed, ...]:
+    """Sites with an atom that point axially."""
+    return tuple(p for p in facts.placed if p.position == "axial" and p.occupant == "atom")

@@ -1,0 +1,141 @@
+"""Charges beyond A-values and gauche paths: geminal and eclipsed pairs, shapes, fused rings, strain beside double bonds."""
+
+from __future__ import annotations
+
+from ringstrain.bill import Bill, Parties, axial_sites, pair_of, shared_ring
+from ringstrain.contacts import Contact, Survey
+from ringstrain.geometry import Geometry
+from ringstrain.provenance import Price
+from ringstrain.states import Shapes
+from ringstrain.tables.prices import PriceBook
+
+
+def charge_geminal(geometry: Geometry, facts: Survey, contact: Contact, parties: Parties, bill: Bill) -> None:
+    """Correction for two groups on one ring atom; which is axial decides."""
+    x, atom, y = contact.atoms
+    axial = next((p.site.neighbour for p in facts.placed if p.site.ring_atom == atom and p.position == "axial"), x)
+    first, second = (x, y) if axial == x else (y, x)
+    a, e = parties.groups[(atom, first)], parties.groups[(atom, second)]
+    bill.charge("geminal", (a.key, e.key), (first, second), parties.book.geminal(a, e), (contact,))
+
+
+def charge_eclipsed(contact: Contact, parties: Parties, bill: Bill) -> None:
+    """Eclipsed neighbours of a boat or half-chair, priced as gauche ones at least."""
+    a, b, c, d = contact.atoms
+    x, y = parties.groups[(b, a)], parties.groups[(c, d)]
+    base = parties.book.vicinal(x, y)
+    extra = parties.book.rule("eclipsed-extra", "/".join(pair_of(x.key, y.key)))
+    price = Price(
+        value_kcal=base.value_kcal,
+        terms=(*base.terms, *extra.terms),
+        row=base.row,
+        source=base.source,
+        known_by=base.known_by,
+        estimated=True,
+        polar=base.polar,
+        bound="at least",
+        note="eclipsed neighbours priced as gauche ones",
+    )
+    bill.charge("vicinal eclipsed", pair_of(x.key, y.key), (a, d), price, (contact,))
+
+
+def charge_transannular(contact: Contact, bill: Bill) -> None:
+    """Two ring atoms facing each other across a bicyclo[3.3.1] skeleton: a contact nobody has priced."""
+    price = Price(
+        value_kcal=None,
+        row="unknown/C3/C7 endo",
+        source="",
+        known_by="computed",
+        estimated=True,
+        note="the two endo hydrogens of a bicyclo[3.3.1] skeleton face each other; no value is tabulated",
+    )
+    bill.charge("C3/C7 endo", ("hydrogen", "hydrogen"), contact.atoms, price, (contact,))
+
+
+def charge_shapes(state: Shapes, parties: Parties, bill: Bill) -> None:
+    """What a boat or twist-boat costs above the chair."""
+    rules = parties.book.tables
+    for number, ring in enumerate(state.rings):
+        if ring.shape not in ("twist-boat", "boat"):
+            continue
+        name = parties.names[number].name
+        special = f"{ring.shape}-{name}"
+        known = any(claim.row == f"rules/{special}" for claim in rules.rivals("rules", ""))
+        price = parties.book.rule(special if known else ring.shape, name)
+        bill.charge("ring shape", (ring.shape,), state.geometry.system.rings[number].atoms, price)
+
+
+def charge_companions(geometry: Geometry, book: PriceBook, bill: Bill) -> None:
+    """Trans-fused five-membered rings cost what closing them costs."""
+    for companion in geometry.system.companions:
+        shared = [a for a in companion if a in geometry.system.atom_set]
+        if len(companion) == 5 and len(shared) == 2 and _is_trans_fused(geometry, companion, shared[0], shared[1]):
+            price = book.rule("trans-five-ring", "five-ring")
+            bill.charge("trans-fused five-ring", ("five-ring",), tuple(sorted(shared)), price)
+
+
+def _is_trans_fused(geometry: Geometry, companion: tuple[int, ...], first: int, second: int) -> bool:
+    """True when a companion ring leaves two neighbouring ring atoms on opposite faces."""
+    ring = shared_ring(geometry, first, second)
+    if ring is None:
+        return False
+    faces = []
+    for atom in (first, second):
+        place = geometry.system.rings[ring].place(atom)
+        faces.append(next((s.face for s in geometry.sites[ring][place] if s.neighbour in companion), 0))
+    return bool(faces[0] and faces[1] and faces[0] != faces[1])
+
+
+def charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: Bill) -> None:
+    """A(1,3) strain of an equatorial group in the plane of an exocyclic double bond with a group on its side."""
+    kinds = geometry.system.kinds
+    structure = geometry.structure
+    for placed in facts.placed:
+        if placed.position != "equatorial" or placed.occupant != "atom" or not placed.site.face:
+            continue
+        atom = placed.site.ring_atom
+        ring = geometry.system.rings[placed.site.ring]
+        for flat in structure.neighbours[atom]:
+            if flat not in ring.atoms or kinds[flat] != "sp2":
+                continue
+            end = next(
+                (n for n in structure.neighbours[flat] if n not in ring.atoms and structure.bond(flat, n).order == 2),
+                None,
+            )
+            if end is None or structure.atoms[end].number != 6 or not _faces_side(geometry, flat, end, atom):
+                continue
+            group = parties.groups[(atom, placed.site.neighbour)]
+            price = parties.book.rule("allylic-z", group.key)
+            bill.charge("A(1,3) strain", (group.key,), (placed.site.neighbour, int(end)), price)
+
+
+def charge_across(facts: Survey, parties: Parties, bill: Bill) -> None:
+    """Two axial halogens on opposite atoms of a ring: their dipoles attract."""
+    axial = {(p.site.ring, p.site.place): p.site for p in axial_sites(facts)}
+    for (ring, place), first in axial.items():
+        second = axial.get((ring, place + 3))
+        if second is None or not parties.names[ring].is_carbocycle:
+            continue
+        x = parties.groups[(first.ring_atom, first.neighbour)]
+        y = parties.groups[(second.ring_atom, second.neighbour)]
+        price = parties.book.across(x, y)
+        if price is not None:
+            bill.charge("1,4-diaxial dipoles", pair_of(x.key, y.key), (first.neighbour, second.neighbour), price)
+
+
+def _faces_side(geometry: Geometry, flat: int, end: int, side: int) -> bool:
+    """True when the double bond flat=end carries a heavy group on the side of a ring neighbour."""
+    structure = geometry.structure
+    outer = [n for n in structure.neighbours[end] if n != flat and structure.atoms[n].number > 1]
+    if len(outer) == 2:
+        return True
+    bond = structure.bond(flat, end)
+    if not outer or not bond.stereo or bond.stereo_atoms is None:
+        return False
+    first, second = bond.stereo_atoms
+    if first not in structure.neighbours[flat]:
+        first, second = second, first
+    same = bond.stereo == "cis"
+    if first != side:
+        same = not same
+    return same if second == outer[0] else not same
