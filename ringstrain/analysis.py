@@ -280,6 +280,8 @@ def _nitrogen(detail: Detail) -> list[tuple[int, str, bool]]:
     """Each inverting nitrogen, where its hydrogen or group points, and whether it is a hydrogen."""
     found: dict[int, tuple[int, str, bool]] = {}
     kinds = detail.shapes.geometry.system.kinds
+    if "inverting" not in kinds.values():
+        return []
     for p in detail.facts.placed:
         if kinds[p.site.ring_atom] == "inverting" and p.occupant != "lone pair":
             found.setdefault(p.site.ring_atom, (p.site.ring_atom, p.position, p.occupant == "hydrogen"))
@@ -317,6 +319,11 @@ def _looks_stereogenic(structure: Structure, atom: int) -> bool:
     record = structure.atoms[atom]
     around = structure.neighbours[atom]
     if record.number != 6 or record.aromatic or len(around) + record.hydrogens != 4 or record.hydrogens > 1:
+        return False
+    ends = [
+        (structure.atoms[n].number, structure.atoms[n].hydrogens) for n in around if len(structure.neighbours[n]) == 1
+    ]
+    if len(set(ends)) < len(ends):
         return False
     from ringstrain.substituents import branch_code
 

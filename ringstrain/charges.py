@@ -1,4 +1,4 @@
-"""Charges beyond A-values and gauche paths: geminal and eclipsed pairs, shapes, fused rings, strain beside double bonds."""
+"""Charges beyond A-values and gauche paths: geminal and eclipsed pairs, ring shapes, fused rings, allylic strain."""
 
 from __future__ import annotations
 
@@ -54,13 +54,12 @@ def charge_transannular(contact: Contact, bill: Bill) -> None:
 
 def charge_shapes(state: Shapes, parties: Parties, bill: Bill) -> None:
     """What a boat or twist-boat costs above the chair."""
-    rules = parties.book.tables
     for number, ring in enumerate(state.rings):
         if ring.shape not in ("twist-boat", "boat"):
             continue
         name = parties.names[number].name
         special = f"{ring.shape}-{name}"
-        known = any(claim.row == f"rules/{special}" for claim in rules.rivals("rules", ""))
+        known = parties.book.tables.has_row(f"rules/{special}")
         price = parties.book.rule(special if known else ring.shape, name)
         bill.charge("ring shape", (ring.shape,), state.geometry.system.rings[number].atoms, price)
 

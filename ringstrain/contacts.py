@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Literal
 
-from ringstrain.geometry import GAUCHE, Geometry, Path, Site, is_gauche, wrap
-from ringstrain.states import Shapes
+from ringstrain.geometry import GAUCHE, Geometry, Path, Site, wrap
+from ringstrain.states import Shapes, Torsions
 from ringstrain.structure.records import Structure
 
 Position = Literal["axial", "equatorial", "isoclinal"]
@@ -89,17 +90,26 @@ def site_torsions(state: Shapes, site: Site) -> tuple[float, float]:
     )
 
 
+@lru_cache(maxsize=256)
+def _positions(torsions: Torsions) -> tuple[tuple[Position, Position], ...]:
+    """Position of the site of face +1 and of face -1 on each ring atom of a shape."""
+    table: list[tuple[Position, Position]] = []
+    for place in range(6):
+        ahead, behind = torsions[place], torsions[place - 1]
+        up = abs(wrap(ahead + 120.0)) + abs(wrap(behind - 120.0))
+        down = abs(wrap(ahead - 120.0)) + abs(wrap(behind + 120.0))
+        if abs(up - down) < 1.0:
+            table.append(("isoclinal", "isoclinal"))
+        else:
+            table.append(("axial", "equatorial") if up < down else ("equatorial", "axial"))
+    return tuple(table)
+
+
 def position_of(state: Shapes, site: Site) -> Position:
     """Axial is the site with the smaller sum of its two ring torsions; equal sums are isoclinal."""
-    torsions = state.rings[site.ring].torsions
-    ahead, behind = torsions[site.place], torsions[site.place - 1]
-    own = abs(wrap(ahead + site.offset_ahead)) + abs(wrap(behind + site.offset_behind))
     if not site.face:
         return "equatorial"
-    other = abs(wrap(ahead - site.offset_ahead)) + abs(wrap(behind - site.offset_behind))
-    if abs(own - other) < 1.0:
-        return "isoclinal"
-    return "axial" if own < other else "equatorial"
+    return _positions(state.rings[site.ring].torsions)[site.place][0 if site.face > 0 else 1]
 
 
 def survey(state: Shapes) -> Survey:
@@ -116,13 +126,7 @@ def survey(state: Shapes) -> Survey:
         Each contact once, in a fixed order.
     """
     geometry = state.geometry
-    placed = tuple(
-        Placed(site, position_of(state, site), occupant_of(geometry.structure, site))
-        for ring in geometry.sites
-        for place in ring
-        for site in place
-        if not (site.face == 0 and _is_double(geometry, site))
-    )
+    placed = _placed(state)
     gauche = _gauche(state)
     contacts = [Contact("gauche", path.atoms, torsion) for path, torsion in gauche]
     if any(ring.shape != "chair" for ring in state.rings):
@@ -131,6 +135,40 @@ def survey(state: Shapes) -> Survey:
     contacts.extend(_peri(geometry, gauche))
     contacts.extend(_geminal(geometry))
     return Survey(placed, tuple(contacts))
+
+
+def _placed(state: Shapes) -> tuple[Placed, ...]:
+    """Where every site points; the cards are made once per geometry."""
+    found = []
+    for number, cards in enumerate(_cards(state.geometry)):
+        table = _positions(state.rings[number].torsions)
+        for site, card in cards:
+            if site.face:
+                found.append(card[table[site.place][0 if site.face > 0 else 1]])
+            else:
+                found.append(card["equatorial"])
+    return tuple(found)
+
+
+_Card = dict[str, Placed]
+
+
+def _cards(geometry: Geometry) -> list[list[tuple[Site, _Card]]]:
+    """For each ring its sites with a ready record for every position."""
+    known: list[list[tuple[Site, _Card]]] | None = geometry.__dict__.get("_cards")
+    if known is None:
+        known = geometry.__dict__["_cards"] = []
+        places: tuple[Position, ...] = ("axial", "equatorial", "isoclinal")
+        for ring in geometry.sites:
+            cards: list[tuple[Site, _Card]] = []
+            for sites in ring:
+                for site in sites:
+                    if site.face == 0 and _is_double(geometry, site):
+                        continue
+                    occupant = occupant_of(geometry.structure, site)
+                    cards.append((site, {place: Placed(site, place, occupant) for place in places}))
+            known.append(cards)
+    return known
 
 
 def _is_double(geometry: Geometry, site: Site) -> bool:
@@ -144,9 +182,13 @@ def _is_double(geometry: Geometry, site: Site) -> bool:
 def _gauche(state: Shapes) -> list[tuple[Path, float]]:
     """Gauche paths with their torsions."""
     found = []
+    rings = state.rings
+    low, high = GAUCHE
     for path in state.geometry.paths:
-        torsion = wrap(state.rings[path.ring].torsions[path.bond] + path.offset)
-        if is_gauche(torsion):
+        torsion = (rings[path.ring].torsions[path.bond] + path.offset) % 360.0
+        if torsion > 180.0:
+            torsion -= 360.0
+        if low <= abs(torsion) < high:
             found.append((path, torsion))
     return found
 

@@ -184,17 +184,33 @@ def populations(
     """
     energies = list(energies_kcal) if energies_kcal is not None else [ledger.total_kcal for ledger in ledgers]
     shares = weights(energies, temperature_K)
-    variables = [variables_of(ledger.terms) for ledger in ledgers]
-    reference = ledgers[0]
+    count = len(ledgers)
+    sigmas: dict[tuple[str, str], float] = {}
+    counts: dict[tuple[str, str], list[float]] = {}
     for number, ledger in enumerate(ledgers):
-        if sets[number] != sets[0]:
-            sigma = model_terms.get(regime_of(differing_lines(reference, ledger)), 0.0)
-            variables[number][("model", str(sets[number]))] = (1.0, sigma)
-    mean = blended(variables, shares)
+        for term in ledger.terms:
+            key = (term.row, term.group)
+            row = counts.get(key)
+            if row is None:
+                row = counts[key] = [0.0] * count
+                sigmas[key] = term.sigma
+            row[number] += term.coefficient
+    for form in dict.fromkeys(sets):
+        if form != sets[0]:
+            members = [number for number in range(count) if sets[number] == form]
+            regime = regime_of(differing_lines(ledgers[0], ledgers[members[0]]))
+            key = ("model", str(form))
+            counts[key] = [1.0 if number in members else 0.0 for number in range(count)]
+            sigmas[key] = model_terms.get(regime, 0.0)
+    variances = [0.0] * count
+    for key, row in counts.items():
+        sigma = sigmas[key]
+        mean = sum([share * own for share, own in zip(shares, row)])
+        for number, own in enumerate(row):
+            variances[number] += ((own - mean) * sigma) ** 2
     outcome = []
-    for share, own in zip(shares, variables, strict=True):
-        spread = Z95 * difference_sigma(own, mean) / (R_KCAL * temperature_K)
-        factor = math.exp(min(spread, 50.0))
+    for share, variance in zip(shares, variances, strict=True):
+        factor = math.exp(min(Z95 * math.sqrt(variance) / (R_KCAL * temperature_K), 50.0))
         outcome.append(Population(share, share / factor, min(1.0, share * factor)))
     return outcome
 

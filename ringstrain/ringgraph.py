@@ -244,6 +244,8 @@ def _build_system(structure: Structure, rings: list[tuple[int, ...]]) -> RingSys
 
 def _blocks(rings: list[Ring]) -> tuple[tuple[int, ...], ...]:
     """Ring numbers of each fused or bridged block; single shared atoms are spiro and do not fuse."""
+    if len(rings) == 1:
+        return ((0,),)
     graph: nx.Graph[int] = nx.Graph()
     graph.add_nodes_from(range(len(rings)))
     sets = [frozenset(ring.atoms) for ring in rings]

@@ -97,6 +97,10 @@ def close_block(
     list of dict
         Shape by ring number; empty when none closes.
     """
+    if len(block) == 1:
+        number = block[0]
+        options = shapes_of(geometry.system.rings[number], (extra or {}).get(number, ()))
+        return [{number: shape} for shape in options if _suits_companions(geometry, number, shape)]
     order, links = _search_order(geometry, block)
     partial: list[dict[int, RingShape]] = [{}]
     for number in order:

@@ -2,17 +2,20 @@
 
 from __future__ import annotations
 
-from typing import Any
+from functools import lru_cache
+from typing import Any, Literal
 
 from rdkit import Chem
 
 from ringstrain.structure.records import IMPLICIT, Atom, AtomIndex, Bond, Configuration, Structure
 
+_NO_TAG = Chem.ChiralType.CHI_UNSPECIFIED
+_SINGLE = Chem.BondType.SINGLE
 _CLOCKWISE = Chem.ChiralType.CHI_TETRAHEDRAL_CW
 _COUNTER = Chem.ChiralType.CHI_TETRAHEDRAL_CCW
 _CIS = (Chem.BondStereo.STEREOCIS, Chem.BondStereo.STEREOZ)
 _TRANS = (Chem.BondStereo.STEREOTRANS, Chem.BondStereo.STEREOE)
-_ORDERS = {Chem.BondType.SINGLE: 1, Chem.BondType.DOUBLE: 2, Chem.BondType.TRIPLE: 3}
+_ORDERS: dict[Any, int] = {Chem.BondType.SINGLE: 1, Chem.BondType.DOUBLE: 2, Chem.BondType.TRIPLE: 3}
 _GROUP_WORDS = {
     Chem.StereoGroupType.STEREO_OR: "one enantiomer or the other",
     Chem.StereoGroupType.STEREO_AND: "a mixture of both (racemic)",
@@ -40,49 +43,64 @@ def structure_from_rdkit(
     Structure
         Atoms in input order, plain hydrogens folded in.
     """
-    index: list[int] = []
-    count = 0
-    rdkit_atoms = list(mol.GetAtoms())
-    folded = [
-        a.GetAtomicNum() == 1 and a.GetIsotope() == 0 and a.GetDegree() == 1 and a.GetFormalCharge() == 0
-        for a in rdkit_atoms
-    ]
-    for i, is_folded in enumerate(folded):
-        if is_folded and rdkit_atoms[i].GetNeighbors()[0].GetAtomicNum() == 1:
-            folded[i] = is_folded = False
-        index.append(-1 if is_folded else count)
-        count += not is_folded
+    rdkit_atoms = [mol.GetAtomWithIdx(i) for i in range(mol.GetNumAtoms())]
+    numbers = [a.GetAtomicNum() for a in rdkit_atoms]
+    index, extra = _fold_hydrogens(rdkit_atoms, numbers) if 1 in numbers else (list(range(len(numbers))), {})
     atoms: list[Atom] = []
     configurations: list[Configuration | None] = []
     for i, a in enumerate(rdkit_atoms):
-        if folded[i]:
+        if index[i] < 0:
             continue
         atoms.append(
-            Atom(
-                a.GetAtomicNum(),
-                a.GetSymbol(),
+            _atom(
+                numbers[i],
                 a.GetFormalCharge(),
                 a.GetIsotope(),
-                a.GetTotalNumHs() + sum(1 for n in a.GetNeighbors() if folded[n.GetIdx()]),
+                a.GetTotalNumHs() + extra.get(i, 0),
                 a.GetIsAromatic(),
                 a.GetNumRadicalElectrons(),
             )
         )
-        configurations.append(_configuration(a, index))
+        tag = a.GetChiralTag()
+        configurations.append(None if tag == _NO_TAG else _configuration(a, tag, index))
     bonds, table, adjacency = _bonds(mol, index, len(atoms))
     return Structure(
         text=text,
         name=name,
         atoms=tuple(atoms),
         bonds=bonds,
-        neighbours=tuple(tuple(sorted(n)) for n in adjacency),
+        neighbours=tuple([tuple(sorted(n)) for n in adjacency]),
         configurations=tuple(configurations),
-        rings=tuple(tuple(AtomIndex(index[i]) for i in ring) for ring in mol.GetRingInfo().AtomRings()),
-        fragment=tuple(AtomIndex(i) for i in range(len(atoms))),
-        spans=tuple(span for span, gone in zip(spans, folded, strict=True) if not gone) if spans else (),
+        rings=tuple([tuple([AtomIndex(index[i]) for i in ring]) for ring in mol.GetRingInfo().AtomRings()]),
+        fragment=tuple(map(AtomIndex, range(len(atoms)))),
+        spans=tuple([span for span, i in zip(spans, index, strict=True) if i >= 0]) if spans else (),
         notes=notes + _enhanced(mol, index),
         _orders=table,
     )
+
+
+@lru_cache(maxsize=4096)
+def _atom(number: int, charge: int, isotope: int, hydrogens: int, aromatic: bool, radicals: int) -> Atom:
+    """One shared record for all atoms that are alike."""
+    symbol = "*" if number == 0 else Chem.GetPeriodicTable().GetElementSymbol(number)
+    return Atom(number, symbol, charge, isotope, hydrogens, aromatic, radicals)
+
+
+def _fold_hydrogens(rdkit_atoms: list[Any], numbers: list[int]) -> tuple[list[int], dict[int, int]]:
+    """Our index of each RDKit atom (-1 for a plain hydrogen), and the plain hydrogens each atom swallows."""
+    index: list[int] = []
+    extra: dict[int, int] = {}
+    count = 0
+    for i, a in enumerate(rdkit_atoms):
+        plain = numbers[i] == 1 and a.GetIsotope() == 0 and a.GetDegree() == 1 and a.GetFormalCharge() == 0
+        host = a.GetNeighbors()[0].GetIdx() if plain else -1
+        if plain and numbers[host] != 1:
+            extra[host] = extra.get(host, 0) + 1
+            index.append(-1)
+        else:
+            index.append(count)
+            count += 1
+    return index, extra
 
 
 def _bonds(
@@ -93,34 +111,44 @@ def _bonds(
     table: dict[tuple[int, int], Bond] = {}
     adjacency: list[list[AtomIndex]] = [[] for _ in range(size)]
     kekulized = None
-    for b in mol.GetBonds():
+    for number in range(mol.GetNumBonds()):
+        b = mol.GetBondWithIdx(number)
         i, j = index[b.GetBeginAtomIdx()], index[b.GetEndAtomIdx()]
         if i < 0 or j < 0:
             continue
-        aromatic = b.GetIsAromatic()
         kind = b.GetBondType()
-        if aromatic:
-            if kekulized is None:
-                kekulized = Chem.Mol(mol)
-                Chem.Kekulize(kekulized)
-            kind = kekulized.GetBondWithIdx(b.GetIdx()).GetBondType()
-        stereo = b.GetStereo() if kind == Chem.BondType.DOUBLE else None
-        word, ends = "", None
-        if stereo is not None and (stereo in _CIS or stereo in _TRANS):
-            pair = [index[k] for k in b.GetStereoAtoms()]
-            if len(pair) == 2 and min(pair) >= 0:
-                word, ends = ("cis" if stereo in _CIS else "trans"), (AtomIndex(pair[0]), AtomIndex(pair[1]))
-        bond = Bond(AtomIndex(i), AtomIndex(j), _ORDERS.get(kind, 0), aromatic, word, ends)  # type: ignore[arg-type]
+        first, second = AtomIndex(i), AtomIndex(j)
+        if kind == _SINGLE:
+            bond = Bond(first, second, 1)
+        else:
+            aromatic = b.GetIsAromatic()
+            if aromatic:
+                if kekulized is None:
+                    kekulized = Chem.Mol(mol)
+                    Chem.Kekulize(kekulized)
+                kind = kekulized.GetBondWithIdx(number).GetBondType()
+            word, ends = _bond_stereo(b, index) if kind == Chem.BondType.DOUBLE else ("", None)
+            bond = Bond(first, second, _ORDERS.get(kind, 0), aromatic, word, ends)
         bonds.append(bond)
         table[(i, j) if i < j else (j, i)] = bond
-        adjacency[i].append(AtomIndex(j))
-        adjacency[j].append(AtomIndex(i))
+        adjacency[i].append(second)
+        adjacency[j].append(first)
     return tuple(bonds), table, adjacency
 
 
-def _configuration(atom: Any, index: list[int]) -> Configuration | None:
+def _bond_stereo(bond: Any, index: list[int]) -> tuple[Literal["", "cis", "trans"], tuple[AtomIndex, AtomIndex] | None]:
+    """Cis or trans of a double bond, and with respect to which neighbours."""
+    stereo = bond.GetStereo()
+    if stereo not in _CIS and stereo not in _TRANS:
+        return "", None
+    pair = [index[k] for k in bond.GetStereoAtoms()]
+    if len(pair) != 2 or min(pair) < 0:
+        return "", None
+    return ("cis" if stereo in _CIS else "trans"), (AtomIndex(pair[0]), AtomIndex(pair[1]))
+
+
+def _configuration(atom: Any, tag: Any, index: list[int]) -> Configuration | None:
     """Configuration from the chirality tag: neighbours in bond order, the implicit one last."""
-    tag = atom.GetChiralTag()
     if tag != _CLOCKWISE and tag != _COUNTER:
         return None
     here = atom.GetIdx()
@@ -129,13 +157,16 @@ def _configuration(atom: Any, index: list[int]) -> Configuration | None:
         order.append(-1)
     if len(order) != 4 or order.count(-1) > 1:
         return None
-    return Configuration(tuple(IMPLICIT if n < 0 else AtomIndex(n) for n in order), tag == _CLOCKWISE)
+    return Configuration(tuple([IMPLICIT if n < 0 else AtomIndex(n) for n in order]), tag == _CLOCKWISE)
 
 
 def _enhanced(mol: Any, index: list[int]) -> tuple[str, ...]:
     """One note for each relative or racemic mark."""
+    groups = mol.GetStereoGroups()
+    if not groups:
+        return ()
     notes = []
-    for group in mol.GetStereoGroups():
+    for group in groups:
         words = _GROUP_WORDS.get(group.GetGroupType())
         members = [str(index[a.GetIdx()] + 1) for a in group.GetAtoms() if index[a.GetIdx()] >= 0]
         if words and members:

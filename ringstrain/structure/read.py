@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import replace
+from functools import lru_cache
 from typing import Any
 
 from rdkit import Chem, rdBase
@@ -102,13 +103,9 @@ def _read_smiles(text: str) -> Structure:
     extension = rest[0] if rest else ""
     name = "" if extension.startswith("|") else extension
     _refuse_odd(core, text)
-    parameters: Any = Chem.SmilesParserParams()
-    parameters.sanitize = False
-    parameters.removeHs = False
-    parameters.allowCXSMILES = extension.startswith("|")
-    parameters.strictCXSMILES = False
+    extended = extension.startswith("|")
     with rdBase.BlockLogs():
-        mol = Chem.MolFromSmiles(text if parameters.allowCXSMILES else core, parameters)
+        mol = Chem.MolFromSmiles(text if extended else core, _parser(extended))
         if mol is None:
             raise _syntax_error(core, text)
         if mol.GetNumHeavyAtoms() > MAX_ATOMS:
@@ -123,12 +120,28 @@ def _read_smiles(text: str) -> Structure:
     return structure_from_rdkit(mol, text=text, name=name, spans=spans if len(spans) == mol.GetNumAtoms() else ())
 
 
+@lru_cache(maxsize=2)
+def _parser(extended: bool) -> Any:
+    """RDKit's parser settings: nothing sanitised, no hydrogen removed, CXSMILES when there is one."""
+    parameters: Any = Chem.SmilesParserParams()
+    parameters.sanitize = False
+    parameters.removeHs = False
+    parameters.allowCXSMILES = extended
+    parameters.strictCXSMILES = False
+    return parameters
+
+
 def _refuse_odd(core: str, text: str) -> None:
     """Refuse reactions and characters no SMILES has."""
     bare = re.sub(r"\[[^\]]*\]", "", core).replace("->", "").replace("<-", "")
     if ">" in bare:
         raise InputError(
             "This is a reaction SMILES.", "Give one molecule: the starting material or the product.", text=text
+        )
+    wild = re.sub(r"\[[^\]]*\]", lambda m: "_" * len(m.group()), core).find("~")
+    if wild >= 0:
+        raise InputError(
+            "The bond '~' stands for any bond.", "Write the bond that is there.", span=(wild, wild + 1), text=text
         )
     bad = _BAD_CHARACTER.search(core)
     if bad:

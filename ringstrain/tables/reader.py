@@ -55,6 +55,7 @@ _UNITS = (
 )
 
 
+@lru_cache(maxsize=1)
 def tables_folder() -> Path:
     """Where the tables live: in the package when installed, else in the checkout."""
     packaged = Path(str(resources.files("ringstrain"))) / "_tables"

@@ -227,6 +227,10 @@ class Tables:
         """
         return self._rows[name]
 
+    def has_row(self, name: str) -> bool:
+        """True when a claim of that row name exists."""
+        return name in self._rows
+
     def rivals(self, table: str, key: str) -> tuple[Claim, ...]:
         """All claims about one key of one table, in file order."""
         return self._by_key.get((table, key), ())
