@@ -13,9 +13,11 @@ from ringstrain.ringgraph import Ring
 from ringstrain.ringnames import RingName, name_ring, rename
 from ringstrain.tables.groups import Group
 from ringstrain.tables.prices import PriceBook
-from ringstrain.tables.ring_prices import RingPlace
+from ringstrain.tables.ring_prices import RingPlace, ring_value
 
 GroupMap = dict[tuple[int, int], Group]
+#: What stands on a ring nitrogen that carries no group.
+HYDROGEN = Group(key="hydrogen", code=1, mirror_code=1, kind="hydrogen", tabulated=False)
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,6 +38,7 @@ class Parties:
     names: tuple[RingName, ...]
     book: PriceBook
     _places: dict[tuple[int, int], RingPlace] = field(default_factory=dict)
+    _prices: dict[tuple[int, int, int], Price] = field(default_factory=dict)
 
     def place(self, geometry: Geometry, ring: int, atom: int) -> RingPlace:
         """A ring atom's position as the price tables see it."""
@@ -43,6 +46,15 @@ class Parties:
         if found is None:
             found = self._places[(ring, atom)] = _ring_place(geometry, self.names[ring], ring, atom)
         return found
+
+    def site_price(self, geometry: Geometry, ring: int, atom: int, neighbour: int) -> Price:
+        """What the group on a site costs when it is axial there."""
+        key = (ring, atom, neighbour)
+        price = self._prices.get(key)
+        if price is None:
+            group = self.groups.get((atom, neighbour), HYDROGEN)
+            price = self._prices[key] = ring_value(self.book, self.place(geometry, ring, atom), group)
+        return price
 
 
 def parties_of(geometry: Geometry, groups: GroupMap, book: PriceBook) -> Parties:
@@ -94,10 +106,13 @@ class _Entry:
 
 @dataclass(slots=True)
 class Bill:
-    """Lines being gathered; equal prices of equal groups pile up on one line."""
+    """Lines being gathered; equal prices of equal groups pile up on one line.
+
+    ``covered`` holds the identities of the contacts of one survey, which live as long as the bill is drawn up.
+    """
 
     entries: dict[tuple[str, tuple[str, ...], str, float | None], _Entry] = field(default_factory=dict)
-    covered: set[Contact] = field(default_factory=set)
+    covered: set[int] = field(default_factory=set)
 
     def charge(
         self,
@@ -116,34 +131,29 @@ class Bill:
             entry = self.entries[key] = _Entry(rule, groups, price)
         entry.count += count
         for contact in covers:
-            if contact in self.covered:
+            if id(contact) in self.covered:
                 raise AssertionError(f"{contact} is charged twice")
-            self.covered.add(contact)
+            self.covered.add(id(contact))
             entry.covers.append(contact)
         if atoms not in entry.atoms:
             entry.atoms.append(atoms)
 
+    def has_paid(self, contact: Contact) -> bool:
+        """True when a line covers the contact already."""
+        return id(contact) in self.covered
+
     def settle(self) -> Ledger:
         """The finished ledger."""
-        return Ledger.of(_line(entry) for entry in self.entries.values())
+        return Ledger.of([_line(entry) for entry in self.entries.values()])
 
 
 def _line(entry: _Entry) -> Line:
-    price = entry.price
     return Line(
         rule=entry.rule,
         groups=entry.groups,
         atoms=tuple(entry.atoms),
         count=entry.count,
-        value_kcal=price.value_kcal,
-        terms=price.terms,
-        row=price.row,
-        source=price.source,
-        known_by=price.known_by,
-        estimated=price.estimated,
-        polar=price.polar,
-        bound=price.bound,
-        note=price.note,
+        price=entry.price,
         covers=tuple(entry.covers),
     )
 

@@ -29,15 +29,13 @@ from ringstrain.tables.ring_prices import ring_value
 __all__ = ["GroupMap", "Parties", "axial_sites", "make_ledger", "parties_of", "ring_strain"]
 #: How much of its A-value a group pays by where it points; on a twist-boat axis a third.
 _FACTORS = {"axial": 1.0, "isoclinal": 1 / 3, "equatorial": 0.0}
-_HYDROGEN = Group(key="hydrogen", code=1, mirror_code=1, kind="hydrogen", tabulated=False)
 
 
 @dataclass(slots=True)
 class _Charged:
-    """What has been paid so far: per gauche path, and per outside group on a ring."""
+    """What each gauche path has been charged so far."""
 
     paths: dict[tuple[int, ...], float | None] = field(default_factory=dict)
-    sites: dict[tuple[int, int, int], float] = field(default_factory=dict)
 
 
 def make_ledger(state: Shapes, facts: Survey, parties: Parties, twisting: frozenset[int] = frozenset()) -> Ledger:
@@ -101,25 +99,23 @@ def _charge_sites(
         atom, neighbour = site.ring_atom, site.neighbour
         if placed.occupant == "hydrogen":
             if system.kinds[atom] == "inverting":
-                price = ring_value(parties.book, parties.place(geometry, site.ring, atom), _HYDROGEN)
+                price = parties.site_price(geometry, site.ring, atom, neighbour)
                 bill.charge("N-H axial", ("hydrogen",), (atom,), price, count=factor)
             continue
         if neighbour in system.atom_set:
             continue
         group = parties.groups[(atom, neighbour)]
-        place = parties.place(geometry, site.ring, atom)
         if (
-            group.key == "tert-butyl"
-            and place.is_plain
-            and site.ring in twisting
+            site.ring in twisting
+            and group.key == "tert-butyl"
             and state.rings[site.ring].shape == "chair"
+            and parties.place(geometry, site.ring, atom).is_plain
         ):
             price = parties.book.rule("tert-butyl-axial-chair", "tert-butyl")
         else:
-            price = ring_value(parties.book, place, group)
-        covers = [c for c in _paths_of(geometry, gauche, site.ring, atom, neighbour) if c not in bill.covered]
+            price = parties.site_price(geometry, site.ring, atom, neighbour)
+        covers = [c for c in _paths_of(geometry, gauche, site.ring, atom, neighbour) if not bill.has_paid(c)]
         bill.charge("A-value", (group.key,), (neighbour,), price, covers, factor)
-        charged.sites[(site.ring, atom, neighbour)] = (price.value_kcal or 0.0) * factor
         for contact in covers:
             a, b, c, d = contact.atoms
             half = None if price.value_kcal is None else price.value_kcal * factor / 2
@@ -146,7 +142,7 @@ def _charge_paths(
     members = geometry.system.atom_set
     axial: set[tuple[int, int]] | None = None
     for contact in gauche:
-        if contact in bill.covered:
+        if bill.has_paid(contact):
             continue
         a, b, c, d = contact.atoms
         x, y = parties.groups[(b, a)], parties.groups[(c, d)]

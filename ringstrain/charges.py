@@ -88,6 +88,8 @@ def _is_trans_fused(geometry: Geometry, companion: tuple[int, ...], first: int, 
 def charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: Bill) -> None:
     """A(1,3) strain of an equatorial group in the plane of an exocyclic double bond with a group on its side."""
     kinds = geometry.system.kinds
+    if "sp2" not in kinds.values():
+        return
     structure = geometry.structure
     for placed in facts.placed:
         if placed.position != "equatorial" or placed.occupant != "atom" or not placed.site.face:
@@ -110,6 +112,8 @@ def charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: Bi
 
 def charge_across(facts: Survey, parties: Parties, bill: Bill) -> None:
     """Two axial halogens on opposite atoms of a ring: their dipoles attract."""
+    if sum(group.kind == "halogen" for group in parties.groups.values()) < 2:
+        return
     axial = {(p.site.ring, p.site.place): p.site for p in axial_sites(facts)}
     for (ring, place), first in axial.items():
         second = axial.get((ring, place + 3))

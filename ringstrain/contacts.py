@@ -138,37 +138,37 @@ def survey(state: Shapes) -> Survey:
 
 
 def _placed(state: Shapes) -> tuple[Placed, ...]:
-    """Where every site points; the cards are made once per geometry."""
+    """Where every site points."""
     found = []
-    for number, cards in enumerate(_cards(state.geometry)):
+    geometry = state.geometry
+    cards, ready = _cards(geometry)
+    for number, ring in enumerate(cards):
         table = _positions(state.rings[number].torsions)
-        for site, card in cards:
-            if site.face:
-                found.append(card[table[site.place][0 if site.face > 0 else 1]])
-            else:
-                found.append(card["equatorial"])
+        for site, occupant in ring:
+            position: Position = "equatorial" if not site.face else table[site.place][0 if site.face > 0 else 1]
+            card = ready.get((site, position))
+            if card is None:
+                card = ready[site, position] = Placed(site, position, occupant)
+            found.append(card)
     return tuple(found)
 
 
-_Card = dict[str, Placed]
+_Cards = tuple[list[list[tuple[Site, Occupant]]], dict[tuple[Site, Position], Placed]]
 
 
-def _cards(geometry: Geometry) -> list[list[tuple[Site, _Card]]]:
-    """For each ring its sites with a ready record for every position."""
-    known: list[list[tuple[Site, _Card]]] | None = geometry.__dict__.get("_cards")
-    if known is None:
-        known = geometry.__dict__["_cards"] = []
-        places: tuple[Position, ...] = ("axial", "equatorial", "isoclinal")
-        for ring in geometry.sites:
-            cards: list[tuple[Site, _Card]] = []
-            for sites in ring:
-                for site in sites:
-                    if site.face == 0 and _is_double(geometry, site):
-                        continue
-                    occupant = occupant_of(geometry.structure, site)
-                    cards.append((site, {place: Placed(site, place, occupant) for place in places}))
-            known.append(cards)
-    return known
+@lru_cache(maxsize=4)
+def _cards(geometry: Geometry) -> _Cards:
+    """For each ring its sites and what stands there, and the records made so far; states share them."""
+    rings = [
+        [
+            (site, occupant_of(geometry.structure, site))
+            for sites in ring
+            for site in sites
+            if not (site.face == 0 and _is_double(geometry, site))
+        ]
+        for ring in geometry.sites
+    ]
+    return rings, {}
 
 
 def _is_double(geometry: Geometry, site: Site) -> bool:
@@ -276,8 +276,9 @@ def _merge_transannular(found: list[Contact], members: frozenset[int]) -> list[C
     return kept + [Contact("transannular", ends) for ends in sorted(double)]
 
 
+@lru_cache(maxsize=4)
 def _geminal(geometry: Geometry) -> list[Contact]:
-    """Two outside groups on one ring atom."""
+    """Two outside groups on one ring atom; the same in every state."""
     found = []
     structure, members = geometry.structure, geometry.system.atom_set
     for atom in geometry.system.atoms:

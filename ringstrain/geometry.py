@@ -87,7 +87,7 @@ class Path:
     offset: float
 
 
-@dataclass(frozen=True, kw_only=True)
+@dataclass(frozen=True, kw_only=True, eq=False)
 class Geometry:
     """A ring system with a configuration: the faces of all its sites.
 

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from ringstrain.contacts import Contact
-from ringstrain.provenance import KnownBy, Term, combined_sigma, scaled, worst_known
+from ringstrain.provenance import KnownBy, Price, Term, combined_sigma, scaled, worst_known
 
 Rule = Literal[
     "A-value",
@@ -45,20 +45,8 @@ class Line:
         Atoms of each occurrence.
     count
         How often it is charged [-].
-    value_kcal
-        Price of one [kcal/mol]; None when no table has it.
-    terms
-        Random variables of one.
-    row, source, known_by
-        Where the price stands and how it is known.
-    estimated
-        True when no row was measured for just this case.
-    polar
-        True when two dipoles meet or the medium decides.
-    bound
-        ``"at least"`` when only a lower limit is known.
-    note
-        What a reader should know.
+    price
+        Value, random variables, source and remarks of one; the attributes below pass them on.
     covers
         The contacts it pays for.
     """
@@ -67,16 +55,53 @@ class Line:
     groups: tuple[str, ...]
     atoms: tuple[tuple[int, ...], ...]
     count: float
-    value_kcal: float | None
-    terms: tuple[Term, ...]
-    row: str
-    source: str
-    known_by: KnownBy
-    estimated: bool
-    polar: bool
-    bound: str
-    note: str
-    covers: tuple[Contact, ...]
+    price: Price
+    covers: tuple[Contact, ...] = ()
+
+    @property
+    def value_kcal(self) -> float | None:
+        """Price of one [kcal/mol]; None when no table has it."""
+        return self.price.value_kcal
+
+    @property
+    def terms(self) -> tuple[Term, ...]:
+        """Random variables of one."""
+        return self.price.terms
+
+    @property
+    def row(self) -> str:
+        """Table row that decides the price."""
+        return self.price.row
+
+    @property
+    def source(self) -> str:
+        """Source key."""
+        return self.price.source
+
+    @property
+    def known_by(self) -> KnownBy:
+        """How the price is known."""
+        return self.price.known_by
+
+    @property
+    def estimated(self) -> bool:
+        """True when no row was measured for just this case."""
+        return self.price.estimated
+
+    @property
+    def polar(self) -> bool:
+        """True when two dipoles meet or the medium decides."""
+        return self.price.polar
+
+    @property
+    def bound(self) -> str:
+        """``"at least"`` when only a lower limit is known."""
+        return self.price.bound
+
+    @property
+    def note(self) -> str:
+        """What a reader should know."""
+        return self.price.note
 
     @property
     def subtotal_kcal(self) -> float | None:
@@ -137,7 +162,9 @@ class Ledger:
         kept = tuple(lines)
         return cls(
             lines=kept,
-            total_kcal=math.fsum(line.count * line.value_kcal for line in kept if line.value_kcal is not None),
+            total_kcal=math.fsum(
+                [line.count * line.price.value_kcal for line in kept if line.price.value_kcal is not None]
+            ),
             terms=tuple(Term(t.row, t.group, t.coefficient * line.count, t.sigma) for line in kept for t in line.terms),
         )
 

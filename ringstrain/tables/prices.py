@@ -258,6 +258,13 @@ class PriceBook:
         KeyError
             If rules.csv has no such row.
         """
+        memory_key = ("rule", name, group)
+        price = self._memory.get(memory_key)
+        if price is None:
+            price = self._memory[memory_key] = self._rule(name, group)
+        return price
+
+    def _rule(self, name: str, group: str) -> Price:
         claim = self.tables.row(f"rules/{name}")
         return Price(
             value_kcal=energy_of(claim),
