@@ -36,7 +36,7 @@ def run(arguments: Sequence[str]) -> int:
     """
     prepare_streams()
     try:
-        code = _run(list(arguments))
+        code = _run([_as_typed(word) for word in arguments])
         sys.stdout.flush()
     except BrokenPipeError:
         silence(sys.stdout)
@@ -45,6 +45,13 @@ def run(arguments: Sequence[str]) -> int:
         _say(["", "Interrupted."])
         return INTERRUPTED
     return code
+
+
+def _as_typed(word: str) -> str:
+    """A word of the command line as UTF-8, also where a bare locale made Python take it for ASCII."""
+    if word.isprintable() or not any("\udc80" <= character <= "\udcff" for character in word):
+        return word
+    return os.fsencode(word).decode("utf-8", errors="surrogateescape")
 
 
 def _run(arguments: list[str]) -> int:

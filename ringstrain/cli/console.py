@@ -11,6 +11,9 @@ from ringstrain.views.look import SAMPLE, Look, Units
 if TYPE_CHECKING:
     from rich.console import Console
 
+#: Below this width tables would have to drop figures; a narrower terminal wraps the lines instead [characters].
+MIN_WIDTH = 50
+
 
 def make_console(stream: TextIO | None = None, *, no_color: bool = False) -> Console:
     """A console that prints brackets as brackets.
@@ -34,7 +37,10 @@ def make_console(stream: TextIO | None = None, *, no_color: bool = False) -> Con
             """Leave a closed pipe to the border."""
             raise BrokenPipeError
 
-    return _Plain(file=stream or sys.stdout, markup=False, emoji=False, highlight=False, no_color=no_color or None)
+    console = _Plain(file=stream or sys.stdout, markup=False, emoji=False, highlight=False, no_color=no_color or None)
+    if console.width < MIN_WIDTH:
+        console.width = MIN_WIDTH
+    return console
 
 
 def make_look(console: Console, *, ascii: bool = False, units: Units = "kcal") -> Look:

@@ -10,7 +10,7 @@ from rich.table import Table
 from rich.text import Text
 
 from ringstrain.provenance import Price, Source
-from ringstrain.tables.records import Claim
+from ringstrain.tables.records import Claim, claim_key
 from ringstrain.units import Z95
 from ringstrain.views.claims_data import Entry, Listed, Topic
 from ringstrain.views.look import Look
@@ -110,12 +110,14 @@ def topic_view(topic: Topic, label: str, sources: Mapping[str, Source], look: Lo
         yield look.text(f"Charged {label}, {look.unit}, \N{PLUS-MINUS SIGN} 95 %:")
         yield _prices(topic.prices, notes, look)
     table_name = ""
+    yours = {(e.claim.table, claim_key(e.claim)) for e in topic.entries if e.claim.known_by == "yours"}
     for entry in _used_first(topic.entries):
         if entry.claim.table != table_name:
             table_name = entry.claim.table
             yield Text()
             yield look.text(f"{_TABLE_WORDS.get(table_name, table_name)} ({table_name}.csv), as published")
-        yield _entry_block(entry, notes, look)
+        beaten = (table_name, claim_key(entry.claim)) in yours
+        yield _entry_block(entry, notes, look, beaten=beaten)
     if not topic.entries:
         yield Text()
         stand_in = "; what is charged comes from stand-ins, classes or rules" if topic.prices else ""
@@ -130,8 +132,8 @@ def _used_first(entries: Sequence[Entry]) -> list[Entry]:
     """Table by table, the claims in use before their rivals."""
     tables = list(dict.fromkeys(entry.claim.table for entry in entries))
 
-    def order(entry: Entry) -> tuple[int, bool]:
-        return tables.index(entry.claim.table), not (entry.used or entry.claim.known_by == "yours")
+    def order(entry: Entry) -> tuple[int, bool, bool]:
+        return tables.index(entry.claim.table), entry.claim.known_by != "yours", not entry.used
 
     return sorted(entries, key=order)
 
@@ -151,13 +153,14 @@ def _prices(prices: Sequence[tuple[str, Price]], notes: Footnotes, look: Look) -
     return table
 
 
-def _entry_block(entry: Entry, notes: Footnotes, look: Look) -> Table:
+def _entry_block(entry: Entry, notes: Footnotes, look: Look, *, beaten: bool) -> Table:
     """One claim: value at the left (above, when the terminal is narrow), conditions, verdict and source beside it."""
     claim = entry.claim
     table = Table.grid(padding=(0, 2, 0, 0))
     about = "/".join(claim.groups)
     lines = [look.text("; ".join(part for part in (about, *conditions_of(claim)) if part))]
-    lines.append(look.text(verdict(entry), "bold" if entry.used or claim.known_by == "yours" else ""))
+    is_used = claim.known_by == "yours" or (bool(entry.used) and not beaten)
+    lines.append(look.text(verdict(entry, beaten=beaten), "bold" if is_used else ""))
     mark = notes.mark(claim.source)
     where = " ".join(part for part in (claim.source, claim.locator and f"({claim.locator})", mark) if part)
     lines.append(look.text("; ".join(part for part in (where, claim.known_by, f"row {claim.row}") if part), "dim"))
@@ -175,13 +178,23 @@ def _entry_block(entry: Entry, notes: Footnotes, look: Look) -> Table:
     return table
 
 
-def verdict(entry: Entry) -> str:
-    """Whether a claim is used, where, with which uncertainty, and why."""
+def verdict(entry: Entry, *, beaten: bool = False) -> str:
+    """Whether a claim is used, where, with which uncertainty, and why.
+
+    Parameters
+    ----------
+    entry
+        The claim and its preferences.
+    beaten
+        True when a value of the user's own takes its place.
+    """
     claim = entry.claim
     if claim.known_by == "yours":
         return "used: it is yours"
     if not entry.used:
         return "rival, kept but not used" if _has_rivals(claim) else "for reference"
+    if beaten:
+        return "gives way to your own value"
     reasons: dict[tuple[float | None, str], list[str]] = {}
     for preference in entry.used:
         reasons.setdefault((preference.uncertainty, preference.why), []).append(preference.medium)

@@ -115,10 +115,10 @@ def _by_temperature(answers: Sequence[Analysis], place: int, look: Look) -> Iter
     yield Text()
     table = new_table(look)
     table.add_column("T", justify="right", no_wrap=True)
-    table.add_column(look.text(f"\N{GREEK CAPITAL LETTER DELTA}G, {look.unit}"), justify="right")
-    table.add_column("K", justify="right")
-    table.add_column("95 %", justify="left")
-    table.add_column("favoured", justify="right")
+    table.add_column(look.text(f"\N{GREEK CAPITAL LETTER DELTA}G, {look.unit}"), justify="right", overflow="fold")
+    table.add_column("K", justify="right", overflow="fold")
+    table.add_column("95 %", justify="left", overflow="fold")
+    table.add_column("favoured", justify="right", overflow="fold")
     table.add_column("form", overflow="fold")
     for analysis in answers:
         result = analysis.ring_systems[place]

@@ -107,12 +107,12 @@ def percent(share: float) -> str:
     return f"{value:.0f} %"
 
 
-def percent_range(low: float, high: float) -> str:
-    """Limits of a share in percent, without the unit; one decimal near none and near all."""
+def percent_range(share: float, low: float, high: float) -> str:
+    """Limits of a share in percent, without the unit; one decimal where the share itself is near none or all."""
+    digits = 1 if share > 0.99 or share < 0.01 else 0
 
-    def one(share: float) -> str:
-        value = 100 * share
-        text = f"{value:.1f}" if value > 99 or value < 1 else f"{value:.0f}"
+    def one(limit: float) -> str:
+        text = f"{100 * limit:.{digits}f}"
         return {"100.0": "100", "0.0": "0"}.get(text, text)
 
     return f"{one(low)} to {one(high)}"

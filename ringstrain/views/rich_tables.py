@@ -41,9 +41,6 @@ _COUNT_WORDS = (
 )
 
 
-_KNOWN_WORDS: dict[str, str] = {"yours": "yours, from your table"}
-
-
 class Footnotes:
     """Numbers for sources in the order in which they are cited."""
 
@@ -148,7 +145,7 @@ def _wide(result: SystemResult, shown: Sequence[State], look: Look) -> Table:
     for place in places:
         table.add_column(place, overflow="fold", min_width=len(place))
     table.add_column(look.text(f"energy, {look.unit}"), justify="right", min_width=8, max_width=14)
-    table.add_column("population", min_width=11, max_width=18)
+    table.add_column("population", min_width=11, max_width=21, no_wrap=look.width >= 90)
     table.add_column("contacts", overflow="fold", min_width=8)
     for state in shown:
         table.add_row(
@@ -180,7 +177,8 @@ def _stacked(result: SystemResult, shown: Sequence[State], look: Look) -> Table:
     for number, state in enumerate(shown):
         if number:
             table.add_section()
-        rows = [(state.id, f"{shape_words(state)}; population {_population(state)}")]
+        share = _population(state).replace("\n", ", ")
+        rows = [(state.id, f"{shape_words(state)}; population {share}")]
         rows.extend(
             (place, groups_at(result, state, place))
             for place in ("axial", "equatorial", "isoclinal")
@@ -225,8 +223,8 @@ def _population(state: State) -> str:
         text = percent(state.population)
         low, high = state.population_low, state.population_high
         if low is not None and high is not None and 1e-3 <= state.population <= 0.999 and high - low > 5e-4:
-            text += f" ({percent_range(low, high)})"
-    return text + (f"; like {state.equivalent_to}" if state.equivalent_to else "")
+            text += f" ({percent_range(state.population, low, high)})"
+    return text + (f"\nlike {state.equivalent_to}" if state.equivalent_to else "")
 
 
 def _contacts(state: State) -> str:
@@ -306,6 +304,24 @@ def _ledger(result: SystemResult, notes: Footnotes, look: Look) -> Iterator[Rend
         return
     yield Text()
     yield ledger_table(columns, compared, rows, notes, look)
+    yield from _counting(result, columns, compared, look)
+
+
+def _counting(
+    result: SystemResult, columns: Sequence[State], compared: tuple[int, int] | None, look: Look
+) -> Iterator[RenderableType]:
+    """What lies between the difference of two ledgers and the free energy: more than one state on a side."""
+    e = result.equilibrium
+    if compared is None or e is None or e.dG_kcal is None:
+        return
+    net = columns[compared[1]].energy_kcal - columns[compared[0]].energy_kcal
+    if abs(e.dG_kcal - net) < 5e-3:
+        return
+    extra, total = look.energy(e.dG_kcal - net, signed=True), look.energy(e.dG_kcal)
+    yield look.text(
+        f"Counting every state of {_members(result, e.favoured)} against {_members(result, e.other)} adds {extra}: "
+        f"\N{GREEK CAPITAL LETTER DELTA}G {total} {look.unit}."
+    )
 
 
 def _columns(result: SystemResult, look: Look) -> tuple[tuple[State, ...], tuple[int, int] | None]:
@@ -344,7 +360,7 @@ def ledger_table(
         if compared:
             cells.append(look.text(look.energy(row.difference_kcal, signed=True)))
         if not narrow:
-            cells.append(look.text(look.energy(row.spread_kcal)))
+            cells.append(look.text("" if row.line.value_kcal is None else look.energy(row.spread_kcal)))
         cells.append(look.text(known_words(row.line, notes)))
         table.add_row(*cells)
     table.add_section()
@@ -372,9 +388,7 @@ def known_words(line: Line, notes: Footnotes) -> str:
     """How a price is known, and the number of its source."""
     if line.value_kcal is None:
         return "no price"
-    words = _KNOWN_WORDS.get(line.known_by, line.known_by)
-    if line.estimated:
-        words = "estimated"
+    words: str = "estimated" if line.estimated and line.known_by != "yours" else line.known_by
     if line.bound:
         words = f"{line.bound}, {words}"
     return f"{words} {notes.mark(line.source)}".strip()

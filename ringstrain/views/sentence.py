@@ -81,10 +81,23 @@ def _share(result: SystemResult, favoured: State) -> str:
         return "favoured"
     total = math.fsum(shares)
     low, high = favoured.population_low, favoured.population_high
+    if len(members) > 1:
+        low, high = _limits_of_two(result, members)
     text = percent(total)
-    if len(members) == 1 and low is not None and high is not None and total <= 0.999:
-        text += f" ({percent_range(low, high)})"
+    if low is not None and high is not None and total <= 0.999 and high - low > 5e-4:
+        text += f" ({percent_range(total, low, high)})"
     return text
+
+
+def _limits_of_two(result: SystemResult, members: tuple[State, ...]) -> tuple[float | None, float | None]:
+    """Limits of the share of a form of several states, from K, when there are only two forms."""
+    e = result.equilibrium
+    if e is None or e.K_low is None or e.K_high is None:
+        return None, None
+    rest = same_form(result, result.state(e.other))
+    if len(members) + len(rest) != len(result.states):
+        return None, None
+    return e.K_low / (1 + e.K_low), e.K_high / (1 + e.K_high)
 
 
 def _cost(result: SystemResult, equilibrium: Equilibrium, lines: list[Line], look: Look) -> str:
@@ -102,6 +115,8 @@ def _cost(result: SystemResult, equilibrium: Equilibrium, lines: list[Line], loo
     weak = _weakest(result, equilibrium, lines)
     if weak:
         remarks.append(weak)
+    if any(line.known_by == "yours" for line in lines):
+        remarks.append("with your own values")
     tail = f" ({'; '.join(remarks)})" if remarks else ""
     if is_flip(result, favoured, other):
         clause = f"the flip costs {amount}{tail}"
@@ -151,7 +166,7 @@ def line_words(result: SystemResult, line: Line) -> str:
     kinds = {group.key: group.kind for group in result.groups.values()}
     groups = "/".join(spoken(key, kinds.get(key, "")) for key in line.groups)
     if line.rule == "A-value":
-        return f"the A-value of {groups}"
+        return f"the A-value of {'the ' if ' ' in groups else ''}{groups}"
     if line.rule == "vicinal gauche":
         return f"the {groups} term"
     if line.rule in ("syn-axial", "peri", "geminal"):
