@@ -152,3 +152,20 @@ def test_constants_have_three_figures(value: float, text: str) -> None:
 def test_every_sign_of_ours_has_an_ascii_stand_in(character: str) -> None:
     assert Look(ascii=True).say(character).isascii()
     assert "?" not in Look(ascii=True).say(character)
+
+
+def test_inverting_nitrogen_is_said() -> None:
+    # the N-methyl of N-methylpiperidine is equatorial by over 2 kcal/mol: common practice, no source
+    assert _say("CN1CCCCC1").startswith("Two equivalent chairs, N-methyl equatorial in each: together 99 % at 298 K")
+    assert "N-H " in _say("CC1COCCN1")
+
+
+def test_a_group_on_a_flat_nitrogen_is_named_as_such() -> None:
+    # A(1,3) strain puts the 2-methyl of N-acyl-2-methylpiperidine axial: common practice, no source
+    assert "N-acetyl" in _say("CC(=O)N1CCCCC1C")
+    assert "and methyl axial" in _say("CC(=O)N1CCCCC1C")
+
+
+def test_half_chairs_are_called_so() -> None:
+    # 4-methylcyclohexene prefers methyl equatorial: common practice, no source
+    assert _say("CC1CCC=CC1").startswith("Half-chair A, methyl equatorial: ")

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from ringstrain.analysis import State, SystemResult
 from ringstrain.views.words import listed, number, plural, spoken
 
-AXIAL, EQUATORIAL, ISOCLINAL, MIXED = "axial", "equatorial", "isoclinal", "axial to one ring and equatorial to another"
+AXIAL, EQUATORIAL, ISOCLINAL, MIXED = "axial", "equatorial", "isoclinal", "axial to one ring and equatorial to the other"
 _ORDER = (EQUATORIAL, AXIAL, ISOCLINAL, MIXED)
 
 
@@ -35,7 +35,7 @@ def standings(result: SystemResult, state: State) -> tuple[Standing, ...]:
             continue
         group = result.groups[(homes[atom], atom)]
         word = spoken(group.key, group.kind)
-        if result.system.kinds[homes[atom]] == "inverting":
+        if state.detail.shapes.geometry.structure.atoms[homes[atom]].element == "N":
             word = f"N-{word}"
         where = next(iter(positions[atom])) if len(positions[atom]) == 1 else MIXED
         found.append(Standing(atom, group.key, word, where))
@@ -55,7 +55,8 @@ def describe(result: SystemResult, state: State, *, anonymous: bool = False) -> 
     groups = standings(result, state)
     cases = [(place, [g for g in groups if g.position == place]) for place in _ORDER]
     cases = [(place, members) for place, members in cases if members]
-    hydrogens = [f"N-H {position}" for atom, position in state.nitrogen if _bears_hydrogen(result, atom)]
+    atoms_of = state.detail.shapes.geometry.structure.atoms
+    hydrogens = [f"N-H {position}" for atom, position in state.nitrogen if atoms_of[atom].hydrogens]
     if len(cases) == 1:
         place, members = cases[0]
         return ", ".join([_uniform(members, place), *hydrogens])
@@ -69,11 +70,6 @@ def describe(result: SystemResult, state: State, *, anonymous: bool = False) -> 
             clauses.append((0, f"{_named(members, shared, anonymous)} {place}"))
     clauses.sort(key=lambda clause: clause[0] > 0)
     return ", ".join([listed([text for _, text in clauses]), *hydrogens]) if clauses else listed(hydrogens)
-
-
-def _bears_hydrogen(result: SystemResult, atom: int) -> bool:
-    """True when nothing but hydrogen hangs on an inverting nitrogen."""
-    return all(home != atom for home, _ in result.groups)
 
 
 def _uniform(members: list[Standing], place: str) -> str:

@@ -181,9 +181,11 @@ def _degenerate(result: SystemResult, favoured: State, at: str) -> str:
     words = describe(result, favoured, anonymous=True)
     where = f", {words} in each" if words else ""
     ratio = ":".join([f"{100 / count:.0f}"] * count) if count in (2, 4, 5) else "equally populated"
-    rest = len(result.states) - count
-    if rest:
-        return f"{number(count).capitalize()} equivalent {what} lowest{where}: K = 1 between them."
+    if len(result.states) > count:
+        shares = [s.population for s in result.states if s.id == favoured.id or s.equivalent_to == favoured.id]
+        known = [share for share in shares if share is not None]
+        together = f": together {percent(math.fsum(known))} {at}" if known else ""
+        return f"{number(count).capitalize()} equivalent {what}{where}{together}; K = 1 between them."
     return f"{number(count).capitalize()} equivalent {what}{where}: {ratio} at any temperature, K = 1."
 
 
