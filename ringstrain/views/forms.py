@@ -7,7 +7,8 @@ from dataclasses import dataclass
 from ringstrain.analysis import State, SystemResult
 from ringstrain.views.words import listed, number, plural, spoken
 
-AXIAL, EQUATORIAL, ISOCLINAL, MIXED = "axial", "equatorial", "isoclinal", "axial to one ring and equatorial to the other"
+AXIAL, EQUATORIAL, ISOCLINAL = "axial", "equatorial", "isoclinal"
+MIXED = "axial to one ring and equatorial to the other"
 _ORDER = (EQUATORIAL, AXIAL, ISOCLINAL, MIXED)
 
 
