@@ -321,3 +321,13 @@ def test_nothing_breaks_in_a_bare_locale(locale: dict[str, str]) -> None:
     assert b"tert-butyl" in done.stdout
     if "PYTHONUTF8" in locale:
         assert done.stdout.isascii()
+
+
+def test_a_corrupt_gz_file_is_an_input_error(tmp_path: Path, capsys: Capture) -> None:
+    data = bytearray(gzip.compress(b"CC1CCCCC1\n" * 500))
+    data[14] ^= 0xFF
+    data[16] ^= 0xFF
+    path = tmp_path / "corrupt.smi.gz"
+    path.write_bytes(bytes(data))
+    assert run(["chairs", str(path)]) == 3
+    assert "cannot be read" in capsys.readouterr().err

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gzip
+import zlib
 from collections.abc import Iterator
 from pathlib import Path
 from typing import TextIO
@@ -57,7 +58,7 @@ def read_records(path: str | Path) -> Iterator[tuple[str, str, bool]]:
     try:
         with _open(path) as stream:
             yield from _smiles_records(stream) if kind == ".smi" else _block_records(stream, kind)
-    except (OSError, EOFError, UnicodeDecodeError) as error:
+    except (OSError, EOFError, UnicodeDecodeError, zlib.error) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else "not a readable text file"
         raise InputError(f"The file {str(path)!r} cannot be read: {reason}.", "Check the path.") from None
 
