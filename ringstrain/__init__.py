@@ -19,6 +19,8 @@ __version__ = "0.1.0"
 if TYPE_CHECKING:
     from ringstrain.analysis import Analysis, analyze
     from ringstrain.errors import InputError, MissingValue, OutOfScope, RingstrainError, TableError
+    from ringstrain.isomers import rank_isomers
+    from ringstrain.ranking import Isomer, Ranking
     from ringstrain.structure import Structure
     from ringstrain.structure.files import read_file
     from ringstrain.structure.read import read
@@ -32,6 +34,9 @@ _HOMES = {
     "OutOfScope": "ringstrain.errors",
     "RingstrainError": "ringstrain.errors",
     "TableError": "ringstrain.errors",
+    "Isomer": "ringstrain.ranking",
+    "Ranking": "ringstrain.ranking",
+    "rank_isomers": "ringstrain.isomers",
     "Structure": "ringstrain.structure",
     "read": "ringstrain.structure.read",
     "read_file": "ringstrain.structure.files",
@@ -41,8 +46,10 @@ _HOMES = {
 __all__ = [
     "Analysis",
     "InputError",
+    "Isomer",
     "MissingValue",
     "OutOfScope",
+    "Ranking",
     "RingstrainError",
     "Structure",
     "TableError",
@@ -50,6 +57,7 @@ __all__ = [
     "__version__",
     "analyze",
     "load_tables",
+    "rank_isomers",
     "read",
     "read_file",
 ]

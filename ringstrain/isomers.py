@@ -428,6 +428,7 @@ def _ranked(entries: Sequence[_Entry], book: PriceBook, free: tuple[int, ...] | 
                 lower_bound=bool(unpriced[i]),
                 configurations=entry.count,
                 structure=entry.structure,
+                variables=tuple((*key, count, sigma) for key, (count, sigma) in blends[i].items()),
             )
         )
     return isomers

@@ -81,7 +81,7 @@ def find_sugar(geometry: Geometry, parties: Parties) -> Sugar | None:
         if letters[order[0]] not in ("O", "G") or letters[order[4]] in ("O", "G"):
             continue
         rest = [letters[a] for a in order[1:]]
-        if all(letter in ("", "O", "C") for letter in rest):
+        if all(letter in ("", "O", "C") for letter in rest) and "O" in rest:
             return Sugar((*order, ring.atoms[oxygen]), True)
     return None
 

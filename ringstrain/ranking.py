@@ -42,6 +42,8 @@ class Isomer:
         How many labelled configurations it stands for.
     structure
         The molecule itself.
+    variables
+        Row, group, coefficient and standard uncertainty of each random variable behind dG.
     """
 
     smiles: str
@@ -58,6 +60,7 @@ class Isomer:
     lower_bound: bool
     configurations: int
     structure: Structure = field(repr=False)
+    variables: tuple[tuple[str, str, float, float], ...] = field(repr=False, default=())
 
     def as_dict(self) -> dict[str, Any]:
         """The isomer as the JSON of an isomers document shows it."""
