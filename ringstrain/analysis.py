@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from ringstrain.billing import GroupMap, parties_of
-from ringstrain.equilibrium import Equilibrium, Population, compare, populations
+from ringstrain.equilibrium import Equilibrium, Population, compare, mixture_energy, populations
 from ringstrain.errors import MissingValue
 from ringstrain.ledger import regime_of
 from ringstrain.provenance import combined_sigma
@@ -13,7 +13,7 @@ from ringstrain.pyranose import chair_form, find_sugar
 from ringstrain.results import SCHEMA, Analysis, Detail, State, SystemResult
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
-from ringstrain.states import Shapes
+from ringstrain.states import RingShape, Shapes
 from ringstrain.stereo import resolve
 from ringstrain.structure.read import read
 from ringstrain.structure.records import Structure
@@ -108,8 +108,7 @@ def _analyze_system(structure: Structure, system: RingSystem, book: PriceBook) -
         (Detail(shapes, facts, ledger) for shapes, facts, ledger in details),
         key=lambda d: (round(d.ledger.total_kcal, 9), _shape_key(d.shapes)),
     )
-    copies = _copies(priced, groups)
-    sets = _form_sets(priced, copies)
+    priced, copies, sets = _sorted_forms(priced, groups, book)
     shares = _shares(priced, sets, book)
     ids = [_letter(i) for i in range(len(priced))]
     sugar = find_sugar(resolved.geometry, parties_of(resolved.geometry, groups, book))
@@ -132,6 +131,31 @@ def _analyze_system(structure: Structure, system: RingSystem, book: PriceBook) -
         system=system,
         groups=groups,
     )
+
+
+def _sorted_forms(
+    priced: list[Detail], groups: GroupMap, book: PriceBook
+) -> tuple[list[Detail], list[int | None], list[int]]:
+    """States lowest first, among equal energies those of the more populated ring form first; copies and form numbers.
+
+    Without the second rule the order of the atoms would decide which of several equal forms leads.
+    """
+    copies = _copies(priced, groups)
+    sets = _form_sets(priced, copies)
+    energies: dict[int, list[float]] = {}
+    for detail, number in zip(priced, sets, strict=True):
+        energies.setdefault(number, []).append(detail.ledger.total_kcal)
+    weight = {n: round(mixture_energy(e, book.conditions.temperature_K), 9) for n, e in energies.items()}
+    order = sorted(
+        range(len(priced)), key=lambda i: (round(priced[i].ledger.total_kcal, 9), weight[sets[i]], sets[i], i)
+    )
+    place = {old: new for new, old in enumerate(order)}
+    moved = []
+    for old in order:
+        original = copies[old]
+        target = None if original is None else place[original]
+        moved.append(target)
+    return [priced[i] for i in order], moved, [sets[i] for i in order]
 
 
 def _shape_key(shapes: Shapes) -> tuple[object, ...]:
@@ -170,16 +194,19 @@ def _form_sets(priced: Sequence[Detail], copies: Sequence[int | None]) -> list[i
     if not priced:
         return []
     watched = _substituted_rings(priced[0].shapes)
-    numbers: dict[tuple[object, ...], int] = {}
-    sets: list[int] = []
-    for i, detail in enumerate(priced):
-        original = copies[i]
+    forms = [tuple(detail.shapes.rings[number] for number in watched) for detail in priced]
+    leader = {form: form for form in forms}
+
+    def lead(form: tuple[RingShape, ...]) -> tuple[RingShape, ...]:
+        while leader[form] != form:
+            form = leader[form]
+        return form
+
+    for i, original in enumerate(copies):
         if original is not None:
-            sets.append(sets[original])
-            continue
-        form = tuple(detail.shapes.rings[number] for number in watched)
-        sets.append(numbers.setdefault(form, len(numbers)))
-    return sets
+            leader[lead(forms[i])] = lead(forms[original])
+    numbers: dict[tuple[RingShape, ...], int] = {}
+    return [numbers.setdefault(lead(form), len(numbers)) for form in forms]
 
 
 def _substituted_rings(shapes: Shapes) -> tuple[int, ...]:

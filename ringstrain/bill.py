@@ -53,6 +53,8 @@ class Parties:
         price = self._prices.get(key)
         if price is None:
             group = self.groups.get((atom, neighbour), HYDROGEN)
+            if group.kind == "hydrogen":  # deuterium and tritium cost what hydrogen does
+                group = HYDROGEN
             price = self._prices[key] = ring_value(self.book, self.place(geometry, ring, atom), group)
         return price
 

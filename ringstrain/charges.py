@@ -13,7 +13,9 @@ from ringstrain.tables.prices import PriceBook
 def charge_geminal(geometry: Geometry, facts: Survey, contact: Contact, parties: Parties, bill: Bill) -> None:
     """Correction for two groups on one ring atom; which is axial decides."""
     x, atom, y = contact.atoms
-    axial = next((p.site.neighbour for p in facts.placed if p.site.ring_atom == atom and p.position == "axial"), x)
+    axial = next((p.site.neighbour for p in facts.placed if p.site.ring_atom == atom and p.position == "axial"), None)
+    if axial is None:  # on a twist-boat axis neither is: the names decide, so that the order of the input does not
+        axial = min((x, y), key=lambda n: parties.groups[(atom, n)].key)
     first, second = (x, y) if axial == x else (y, x)
     a, e = parties.groups[(atom, first)], parties.groups[(atom, second)]
     bill.charge("geminal", (a.key, e.key), (first, second), parties.book.geminal(a, e), (contact,))

@@ -6,8 +6,8 @@ from dataclasses import dataclass
 from functools import lru_cache
 from typing import Literal
 
-from ringstrain.geometry import GAUCHE, Geometry, Path, Site, wrap
-from ringstrain.states import Shapes, Torsions
+from ringstrain.geometry import GAUCHE, Geometry, Path, Site, mean_angle, wrap
+from ringstrain.states import RingShape, Shapes, Torsions
 from ringstrain.structure.records import Structure
 
 Position = Literal["axial", "equatorial", "isoclinal"]
@@ -185,12 +185,20 @@ def _gauche(state: Shapes) -> list[tuple[Path, float]]:
     rings = state.rings
     low, high = GAUCHE
     for path in state.geometry.paths:
-        torsion = (rings[path.ring].torsions[path.bond] + path.offset) % 360.0
-        if torsion > 180.0:
-            torsion -= 360.0
+        torsion = _torsion_of(rings, path)
         if low <= abs(torsion) < high:
             found.append((path, torsion))
     return found
+
+
+def _torsion_of(rings: tuple[RingShape, ...], path: Path) -> float:
+    """Torsion of a path in a state [degree]: the mean over the rings that share its bond."""
+    views = path.views
+    number, bond, offset = views[0]
+    torsion = wrap(rings[number].torsions[bond] + offset)
+    if len(views) == 1:
+        return torsion
+    return mean_angle([torsion, *[rings[n].torsions[p] + o for n, p, o in views[1:]]])
 
 
 def _eclipsed(state: Shapes) -> list[Contact]:
@@ -200,7 +208,7 @@ def _eclipsed(state: Shapes) -> list[Contact]:
     for path in state.geometry.paths:
         if path.atoms[0] in members or path.atoms[3] in members:
             continue
-        torsion = wrap(state.rings[path.ring].torsions[path.bond] + path.offset)
+        torsion = _torsion_of(state.rings, path)
         if abs(torsion) < GAUCHE[0]:
             found.append(Contact("eclipsed", path.atoms, torsion))
     return found

@@ -19,6 +19,12 @@ GAUCHE = (37.0, 82.0)
 ANTI = 142.0
 
 
+def mean_angle(angles: list[float]) -> float:
+    """Mean of angles that lie close together on the circle [degree]."""
+    first = angles[0]
+    return wrap(first + sum([wrap(angle - first) for angle in angles]) / len(angles))
+
+
 def wrap(angle: float) -> float:
     """An angle brought into -180 < angle <= 180 [degree]."""
     angle %= 360.0
@@ -73,18 +79,14 @@ class Path:
     ----------
     atoms
         a, b, c, d.
-    ring, bond
-        Ring number and place of the bond b-c in it.
-    offset
-        Torsion of the path less that of the ring bond [degree].
-    swings
-        Inverting nitrogens whose side the offset depends on.
+    views
+        For each ring that holds the bond b-c: ring number, place of the bond in it, and the torsion of the path
+        less that of the ring bond [degree]. Rings of different shape may differ by up to the closing tolerance;
+        the mean counts, so that the order of the atoms does not.
     """
 
     atoms: tuple[int, int, int, int]
-    ring: int
-    bond: int
-    offset: float
+    views: tuple[tuple[int, int, float], ...]
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -158,26 +160,31 @@ class Geometry:
         rings_at = self._rings_at
         atoms = self.structure.atoms
         for bond, places in self.ring_bonds.items():
-            number, place = places[0]
-            ring = self.system.rings[number].atoms
-            b, c = ring[place], ring[(place + 1) % 6]
             if self.structure.bond(*bond).order != 1 or self.structure.bond(*bond).aromatic:
                 continue
-            ends_b = self._ends(number, place, ahead=True, other=c)
-            ends_c = self._ends(number, (place + 1) % 6, ahead=False, other=b)
-            for a, da in ends_b:
-                if a < 0 or atoms[a].number == 1:
+            b, c = bond
+            views = [self._view(number, place, b) for number, place in places]
+            for a in views[0][2]:
+                if a < 0 or a == c or atoms[a].number == 1:
                     continue
-                for d, dd in ends_c:
-                    if d < 0 or d == a or atoms[d].number == 1:
+                for d in views[0][3]:
+                    if d < 0 or d in (b, a) or atoms[d].number == 1:
                         continue
                     if rings_at[a] & rings_at[b] & rings_at[c] & rings_at[d]:
                         continue
-                    found.append(Path((a, b, c, d), number, place, da + dd))
+                    found.append(Path((a, b, c, d), tuple([(n, p, front[a] + back[d]) for n, p, front, back in views])))
         return tuple(found)
 
-    def _ends(self, number: int, place: int, *, ahead: bool, other: int) -> list[tuple[int, float]]:
-        """Neighbours of a ring atom but one, with their offsets along the bond to that one."""
+    def _view(self, number: int, place: int, b: int) -> tuple[int, int, dict[int, float], dict[int, float]]:
+        """A ring bond seen from one ring: offsets of the neighbours of b and of those of its partner."""
+        ring = self.system.rings[number].atoms
+        following = (place + 1) % 6
+        ahead = dict(self._ends(number, place, ahead=True))
+        behind = dict(self._ends(number, following, ahead=False))
+        return (number, place, ahead, behind) if ring[place] == b else (number, place, behind, ahead)
+
+    def _ends(self, number: int, place: int, *, ahead: bool) -> list[tuple[int, float]]:
+        """Neighbours of a ring atom but the one across the bond, with their offsets along it [degree]."""
         ring = self.system.rings[number].atoms
         back = ring[place - 1] if ahead else ring[(place + 1) % 6]
         ends = [(back, 0.0)]

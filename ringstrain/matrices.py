@@ -147,10 +147,7 @@ class Matrices:
                 continue
             values, unknown = self._pair_prices(meeting.kind)
             if meeting.kind == "syn-axial X//Y":
-                a, b = (
-                    (plain.shares if has_path else plain.halves)[end // 2]
-                    for end, has_path in zip((meeting.first, meeting.second), meeting.has_path, strict=True)
-                )
+                a, b = plain.shares[meeting.first // 2], plain.shares[meeting.second // 2]
                 heavy = self._heavy()
                 values = np.where(heavy[:, None] & heavy[None, :], values - a[:, None] - b[None, :], 0.0)
                 values = np.where(unknown > 0, 0.0, values)
@@ -168,7 +165,7 @@ class Matrices:
     def _site_prices(self, places: list[RingPlace], *, twisting: bool) -> _SitePrices:
         """Price of each group axial at each place, and the share of it that a syn-axial partner takes over."""
         count = len(self.palette) + 2
-        values, shares, halves = (np.zeros((6, count)) for _ in range(3))
+        values, shares = np.zeros((6, count)), np.zeros((6, count))
         unknown = np.zeros((6, count), dtype=np.uint64)
         for number, place in enumerate(places):
             values[number, -1] = ring_value(self.book, place, _HYDROGEN).value_kcal or 0.0
@@ -182,10 +179,10 @@ class Matrices:
                 if price.value_kcal is None:
                     unknown[number, index] = _fingerprint("A-value", (member.group.key,), price.row)
                 values[number, index] = price.value_kcal or 0.0
-                half = halves[number, index] = (self.book.a_value(member.group).value_kcal or 0.0) / 2
+                half = (self.book.a_value(member.group).value_kcal or 0.0) / 2
                 paid = None if price.value_kcal is None else price.value_kcal / 2
                 shares[number, index] = half if paid is None or paid >= half - 1e-9 else max(paid, 0.0)
-        return _SitePrices(values, shares, halves, unknown)
+        return _SitePrices(values, shares, unknown)
 
     def _swings(self, place: int) -> bool:
         atom = self.scaffold.system.rings[0].atoms[place]
@@ -233,13 +230,10 @@ _QUESTIONS: dict[str, Callable[[PriceBook, Group, Group], Price | None]] = {
 
 @dataclass(frozen=True, slots=True)
 class _SitePrices:
-    """By place and group: price axial, share a syn-axial partner takes over when its path was paid for and when not,
-    fingerprint where unpriced.
-    """
+    """By place and group: price axial, share a syn-axial partner takes over, fingerprint where unpriced."""
 
     values: Floats
     shares: Floats
-    halves: Floats
     unknown: NDArray[np.uint64]
 
 

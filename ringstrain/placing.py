@@ -80,6 +80,8 @@ class Scaffold:
         Image of every slot under each symmetry operation, ``(operations, slots)``.
     signs
         +1 for a proper operation, -1 for one that reverses handedness.
+    turns
+        Image of each place of the first ring under each operation, ``(operations, 6)``.
     direction
         +1 when upper faces are the geometry's positive ones, else -1.
     is_parent
@@ -93,6 +95,7 @@ class Scaffold:
     slots: tuple[Slot, ...]
     permutations: NDArray[np.intp]
     signs: NDArray[np.int8]
+    turns: NDArray[np.intp]
     direction: int
     is_parent: bool
 
@@ -162,7 +165,7 @@ def make_scaffold(ring: str, tables: Tables) -> Scaffold:
     geometry = resolve(structure, system, groups).geometry
     direction = _direction(system)
     slots = _slots(structure, system, geometry, marks, direction, strict=elements is None)
-    images, signs = _slot_images(geometry, slots, groups, {s.atom for s in slots})
+    images, signs, turns = _slot_images(geometry, slots, groups, {s.atom for s in slots})
     return Scaffold(
         name=ring,
         structure=structure,
@@ -171,6 +174,7 @@ def make_scaffold(ring: str, tables: Tables) -> Scaffold:
         slots=slots,
         permutations=images,
         signs=signs,
+        turns=turns,
         direction=direction,
         is_parent=elements is not None,
     )
@@ -230,10 +234,10 @@ def _is_hydrogen(structure: Structure, site: Site) -> bool:
 
 def _slot_images(
     geometry: Geometry, slots: tuple[Slot, ...], groups: object, marked: set[int]
-) -> tuple[NDArray[np.intp], NDArray[np.int8]]:
-    """Slot permutations of the symmetry operations that keep the set of marked atoms."""
+) -> tuple[NDArray[np.intp], NDArray[np.int8], NDArray[np.intp]]:
+    """Slot permutations of the symmetry operations that keep the set of marked atoms, with where the first ring lands."""
     system = geometry.system
-    rows: dict[tuple[tuple[int, ...], int], None] = {}
+    rows: dict[tuple[tuple[int, ...], int], tuple[int, ...]] = {}
     for operation in operations(geometry, groups):  # type: ignore[arg-type]
         if {operation.images[a] for a in marked} != marked:
             continue
@@ -249,10 +253,11 @@ def _slot_images(
             wanted = operation.sign * image.direction * face
             targets = geometry.sites[image.ring][target_place]
             row.append(_slot_of(slots, target_atom, wanted, targets))
-        rows[(tuple(row), operation.sign)] = None
+        rows.setdefault((tuple(row), operation.sign), landed[0].places)
     ordered = sorted(rows, key=lambda item: (item[1] < 0, item[0]))
     images = np.array([row for row, _ in ordered], dtype=np.intp)
-    return images, np.array([sign for _, sign in ordered], dtype=np.int8)
+    signs = np.array([sign for _, sign in ordered], dtype=np.int8)
+    return images, signs, np.array([rows[key] for key in ordered], dtype=np.intp)
 
 
 def _slot_of(slots: tuple[Slot, ...], atom: int, face: int, targets: tuple[Site, ...]) -> int:

@@ -40,15 +40,12 @@ class Meeting:
         Kind of contact.
     first, second
         The sites; of a geminal pair the axial one first.
-    has_path
-        Whether each group of a syn-axial pair has a gauche path towards the other, which its A-value paid for.
     """
 
     shape: int
     kind: str
     first: int
     second: int
-    has_path: tuple[bool, bool] = (True, True)
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +90,6 @@ def find_relations(tables: Tables) -> Relations:
             column = column_of[placed.site.neighbour]
             factors[number, column] = {"axial": 1.0, "isoclinal": 1 / 3, "equatorial": 0.0}[placed.position]
             axial[number, column] = placed.position == "axial"
-        gauche = {atoms for c in facts.of_kind("gauche") for atoms in (c.atoms, c.atoms[::-1])}
         for contact in facts.contacts:
             ends = [column_of.get(a) for a in (contact.atoms[0], contact.atoms[-1])]
             if ends[0] is None or ends[1] is None:
@@ -102,11 +98,8 @@ def find_relations(tables: Tables) -> Relations:
             if contact.kind == "gauche":
                 both = not axial[number, first] and not axial[number, second]
                 meetings.append(Meeting(number, "gauche, both equatorial" if both else "gauche", first, second))
-            elif contact.kind == "eclipsed":
+            elif contact.kind in ("eclipsed", "syn-axial X//Y"):
                 meetings.append(Meeting(number, contact.kind, first, second))
-            elif contact.kind == "syn-axial X//Y":
-                has_path = contact.atoms[:4] in gauche, contact.atoms[:0:-1] in gauche
-                meetings.append(Meeting(number, contact.kind, first, second, has_path))
             elif contact.kind == "geminal":
                 first, second = (second, first) if axial[number, second] else (first, second)
                 kind = "geminal" if axial[number, first] else "geminal, isoclinal"

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from ringstrain.closing import Blocks, close_chairs, close_somehow
 from ringstrain.errors import OutOfScope, StereoError
-from ringstrain.geometry import Geometry, neighbour_orders, with_choices
+from ringstrain.geometry import Geometry, Site, neighbour_orders, with_choices
 from ringstrain.ringgraph import RingSystem
 from ringstrain.structure.records import Structure
 from ringstrain.symmetry import Groups, automorphisms, same_configuration
@@ -35,10 +35,17 @@ def open_centres(
         place = system.rings[number].place(atom)
         first, second = geometry.sites[number][place]
         a, b = groups.get((atom, first.neighbour)), groups.get((atom, second.neighbour))
+        if _both_hydrogen(structure, first, second):
+            continue
         inside = first.neighbour in system.atom_set or second.neighbour in system.atom_set
         if inside or a is None or b is None or a.code != b.code:
             found.append(atom)
     return tuple(found)
+
+
+def _both_hydrogen(structure: Structure, *sites: Site) -> bool:
+    """True when nothing but hydrogen of any isotope, or lone pairs, stands on the sites."""
+    return all(site.neighbour < 0 or structure.atoms[site.neighbour].is_hydrogen for site in sites)
 
 
 def resolve(structure: Structure, system: RingSystem, groups: Groups) -> Resolved:
@@ -103,6 +110,8 @@ def _is_lone_centre(geometry: Geometry, atom: int, groups: Groups) -> bool:
         if other == atom or other not in geometry.orders or system.kinds[other] == "inverting":
             continue
         first, second = geometry.sites[0][system.rings[0].place(other)]
+        if _both_hydrogen(geometry.structure, first, second):
+            continue
         a, b = groups.get((other, first.neighbour)), groups.get((other, second.neighbour))
         if (a is None) != (b is None) or (a is not None and b is not None and a.code != b.code):
             return False

@@ -54,7 +54,7 @@ def describe_group(structure: Structure, first: int, ring_atom: int, system: fro
     key = _group_index(tables).get(code) or _group_index(tables).get(mirror)
     kind = classify(structure, first, ring_atom)
     if key is None:
-        plain, _, _ = branch_code(structure, first, ring_atom, system, stereo=False)
+        plain, _, _ = branch_code(structure, first, ring_atom, system, stereo=False, isotopes=False)
         key = _group_index(tables).get(plain)
     label = key or f"{kind} {_formula(structure, members)}"
     return _group(structure, first, label, code, mirror, kind, tabulated=key is not None)
@@ -197,35 +197,42 @@ def _formula(structure: Structure, members: list[int]) -> str:
     return "".join(element + (str(counts[element]) if counts[element] > 1 else "") for element in order)
 
 
-def branch_members(structure: Structure, first: int, system: frozenset[int]) -> list[int]:
-    """Atoms of a branch, first atom first."""
+def branch_members(structure: Structure, first: int, system: frozenset[int], *, isotopes: bool = True) -> list[int]:
+    """Atoms of a branch, first atom first; without isotopic hydrogens when these do not count."""
     seen = {first}
     members = [first]
     for atom in members:
         for n in structure.neighbours[atom]:
-            if n not in seen and n not in system:
+            if n not in seen and n not in system and (isotopes or not structure.atoms[n].is_hydrogen):
                 seen.add(n)
                 members.append(int(n))
     return members
 
 
 def branch_code(
-    structure: Structure, first: int, ring_atom: int, system: frozenset[int], *, stereo: bool = True
+    structure: Structure,
+    first: int,
+    ring_atom: int,
+    system: frozenset[int],
+    *,
+    stereo: bool = True,
+    isotopes: bool = True,
 ) -> tuple[int, int, list[int]]:
     """Code of a branch, code of its mirror image, and its atoms.
 
     Equal branches have equal codes: colours are refined over the branch until no more classes appear, then
-    the configurations are mixed in.
+    the configurations are mixed in. With ``isotopes`` false labels are ignored, D and T counted as hydrogens.
     """
-    members = branch_members(structure, first, system)
+    members = branch_members(structure, first, system, isotopes=isotopes)
     if len(members) == 1:
-        code = hash((_own_colour(structure, first), 1))
+        code = hash((_own_colour(structure, first, isotopes), 1))
         return code, code, members
     inside = set(members)
-    colours = {a: hash((_own_colour(structure, a), a == first)) for a in members}
+    colours = {a: hash((_own_colour(structure, a, isotopes), a == first)) for a in members}
     links = {
         a: [
-            (structure.bond(a, n).order if not structure.bond(a, n).aromatic else 4, int(n)) for n in structure.neighbours[a]
+            (structure.bond(a, n).order if not structure.bond(a, n).aromatic else 4, int(n))
+            for n in structure.neighbours[a]
         ]
         for a in members
     }
@@ -245,10 +252,14 @@ def branch_code(
     return codes[0], codes[1], members
 
 
-def _own_colour(structure: Structure, atom: int) -> int:
+def _own_colour(structure: Structure, atom: int, isotopes: bool = True) -> int:
     """What an atom is by itself."""
     a = structure.atoms[atom]
-    return hash((a.number, a.charge, a.isotope, a.hydrogens, a.aromatic, len(structure.neighbours[atom])))
+    degree = len(structure.neighbours[atom])
+    if isotopes:
+        return hash((a.number, a.charge, a.isotope, a.hydrogens, a.aromatic, degree))
+    heavy = sum(not structure.atoms[n].is_hydrogen for n in structure.neighbours[atom])
+    return hash((a.number, a.charge, 0, a.hydrogens + degree - heavy, a.aromatic, heavy))
 
 
 def _refine(

@@ -233,7 +233,7 @@ def pairs_with(*broken: str) -> list[Any]:
     ]
 
 
-@pytest.mark.parametrize("pair", pairs_with(*WRITTEN_TWICE))
+@pytest.mark.parametrize("pair", pairs_with())
 def test_two_writings_of_one_compound_give_one_answer(pair: tuple[str, str]) -> None:
     assert Chem.CanonSmiles(pair[0]) == Chem.CanonSmiles(pair[1]), "the two are not one compound"
     (first,), (second,) = (rs.analyze(text).ring_systems for text in pair)
@@ -245,7 +245,7 @@ def test_two_writings_of_one_compound_give_one_answer(pair: tuple[str, str]) -> 
     assert first.equilibrium.dG_kcal == pytest.approx(second.equilibrium.dG_kcal, abs=1e-6)
 
 
-@pytest.mark.parametrize("pair", pairs_with("perhydroanthracene with a twist-boat in either ring"))
+@pytest.mark.parametrize("pair", pairs_with())
 def test_the_favoured_form_is_the_one_with_the_larger_share(pair: tuple[str, str]) -> None:
     for text in pair:
         (system,) = rs.analyze(text).ring_systems
@@ -254,14 +254,12 @@ def test_the_favoured_form_is_the_one_with_the_larger_share(pair: tuple[str, str
         assert system.equilibrium.dG_kcal >= 0.0
 
 
-@pytest.mark.xfail(strict=True, reason="deuterium on a methyl hides the group from the lookup")
 def test_trideuteriomethyl_is_priced_as_methyl() -> None:
     # Common practice, no source: the isotope effect on an A-value is far below its uncertainty.
     (light,), (heavy,) = (rs.analyze(text).ring_systems for text in ("CC1CCCCC1", "[2H]C([2H])([2H])C1CCCCC1"))
     assert [s.energy_kcal for s in heavy.states] == [s.energy_kcal for s in light.states]
 
 
-@pytest.mark.xfail(strict=True, reason="an open CHD centre is refused although deuterium counts as hydrogen")
 def test_an_open_CHD_centre_does_not_matter() -> None:
     (light,), (heavy,) = (rs.analyze(text).ring_systems for text in ("CC1CCCCC1", "CC1CCCC([2H])C1"))
     assert [s.energy_kcal for s in heavy.states] == [s.energy_kcal for s in light.states]
