@@ -1,0 +1,1 @@
+"""Pictures of states: placed in space for the eye only, projected, labelled, written as SVG, PNG or text."""

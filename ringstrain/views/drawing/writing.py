@@ -1,0 +1,152 @@
+"""Labels set at the ends of bonds so that none lies on another."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+
+from ringstrain.views.drawing.labels import runs_of
+from ringstrain.views.drawing.scene import Box, Label, Role, Run, crosses, overlap, runs_width
+
+Point = tuple[float, float]
+
+#: How far a bond may be drawn out to find its label a free place [-].
+STRETCHES = (1.0, 1.2, 1.45, 1.75, 2.1, 2.5, 3.0, 3.6)
+#: Clear space around a label [px].
+CLEARANCE = 2.5
+
+
+@dataclass(frozen=True, slots=True)
+class Written:
+    """A label in its place and the end of the bond that leads to it."""
+
+    label: Label
+    tip: Point
+    middle: Point
+
+
+@dataclass(slots=True)
+class Board:
+    """The labels and segments placed so far.
+
+    Attributes
+    ----------
+    boxes
+        Rectangles of labels.
+    segments
+        Bonds.
+    """
+
+    boxes: list[Box] = field(default_factory=list)
+    segments: list[tuple[Point, Point]] = field(default_factory=list)
+
+    def cost(self, box: Box, root: Point | None = None, tip: Point | None = None) -> float:
+        """How badly a label here would collide: labels count most, then bonds through it, then its bond through labels."""
+        total = 0.0
+        for other in self.boxes:
+            shared = overlap(box, other, CLEARANCE)
+            if shared:
+                total += 1000.0 + shared
+        for start, end in self.segments:
+            if start != root and end != root and crosses(box, start, end):
+                total += 60.0
+            elif root is not None and (start == root or end == root) and crosses(box, start, end):
+                total += 40.0
+        if root is not None and tip is not None:
+            for other in self.boxes:
+                if crosses(other, root, tip):
+                    total += 300.0
+        return total
+
+
+def write_group(
+    board: Board,
+    root: Point,
+    way: Point,
+    pieces: tuple[str, ...],
+    *,
+    size: float,
+    role: Role,
+    bold: bool,
+    number: str = "",
+    kind: str = "group",
+) -> Written:
+    """Set a group's label at the end of its bond.
+
+    Parameters
+    ----------
+    board
+        What is placed already; the label and its bond are added.
+    root
+        Where the bond starts [px].
+    way
+        Bond vector of usual length [px].
+    pieces
+        The label.
+    size
+        [px].
+    role, bold
+        Look.
+    number
+        Atom number to add, empty for none.
+    kind
+        Sort of label.
+    """
+    best: tuple[float, Written] | None = None
+    turns = (False, True) if way[0] >= -1.0 else (True, False)
+    forms = [_form(pieces, turned, number, size) for turned in turns]
+    if len(pieces) == 1 and not number:
+        forms = [form for form in forms if not form[0]]
+    for rank, stretch in enumerate(STRETCHES):
+        tip = root[0] + stretch * way[0], root[1] + stretch * way[1]
+        for order, (turned, runs, atom_width) in enumerate(forms):
+            # The end that the bond points at is held fast, so that another face shifts only the far end.
+            x = tip[0] + atom_width / 2 if turned else tip[0] - atom_width / 2
+            label = Label(x, tip[1] + 0.36 * size, runs, role, size, "end" if turned else "start", bold, kind)
+            end = _trimmed(root, tip, atom_width, size)
+            cost = board.cost(label.box, root, end) + 9.0 * rank + 5.0 * order
+            if best is None or cost < best[0]:
+                best = (cost, Written(label, end, tip))
+        if best is not None and best[0] < 9.0 * (rank + 1):
+            break
+    assert best is not None
+    written = best[1]
+    board.boxes.append(written.label.box)
+    board.segments.append((root, written.tip))
+    return written
+
+
+def _form(pieces: tuple[str, ...], turned: bool, number: str, size: float) -> tuple[bool, tuple[Run, ...], float]:
+    """Whether a label reads towards its bond, its runs, and the width of the glyph that the bond points at."""
+    runs = runs_of(pieces, turned=turned)
+    atom_width = runs_width(runs_of(pieces[:1]), size)
+    if turned and pieces[-1] in ("+", "\N{MINUS SIGN}"):
+        atom_width += 2 * runs_width(((pieces[-1], "sup"),), size)
+    if number:
+        runs = ((number, "number"), *runs) if turned else (*runs, (number, "number"))
+    return turned, runs, atom_width
+
+
+def _trimmed(root: Point, tip: Point, wide: float, size: float) -> Point:
+    """End of the bond short of the glyph it points at, which is ``wide`` px wide."""
+    dx, dy = root[0] - tip[0], root[1] - tip[1]
+    length = math.hypot(dx, dy) or 1.0
+    across, up = abs(dx) / length, abs(dy) / length
+    back = min((0.5 * wide + 2.0) / max(across, 1e-6), 0.64 * size / max(up, 1e-6), 0.7 * length)
+    return tip[0] + back * dx / length, tip[1] + back * dy / length
+
+
+def write_number(board: Board, at: Point, ways: tuple[Point, ...], text: str, size: float) -> Label:
+    """Set an atom number near an atom, in the first free one of some directions."""
+    best: tuple[float, Label] | None = None
+    for rank, (way, reach) in enumerate((way, reach) for reach in (1.0, 1.35, 1.8, 2.4) for way in ways):
+        x, y = at[0] + reach * way[0], at[1] + reach * way[1]
+        label = Label(x, y + 0.36 * size, ((text, ""),), "muted", size, "middle", False, "number")
+        cost = board.cost(label.box) + rank
+        if best is None or cost < best[0]:
+            best = (cost, label)
+        if cost < rank + 1:
+            break
+    assert best is not None
+    board.boxes.append(best[1].box)
+    return best[1]
