@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from rdkit import Chem
+from rdkit import Chem, rdBase
 
 from ringstrain.structure.records import Structure
 
@@ -78,5 +78,20 @@ def write_smiles(structure: Structure, *, canonical: bool = True) -> str:
     str
         The SMILES.
     """
-    text: str = Chem.MolToSmiles(to_rdkit(structure), canonical=canonical)
+    with rdBase.BlockLogs():
+        mol = to_rdkit(structure)
+        _drop_idle_marks(mol)
+        text: str = Chem.MolToSmiles(mol, canonical=canonical)
     return text
+
+
+def _drop_idle_marks(mol: Any) -> None:
+    """Clear marks at atoms that cannot be stereocentres; dependent ring centres keep theirs."""
+    tagged = [a for a in mol.GetAtoms() if a.GetChiralTag() != Chem.ChiralType.CHI_UNSPECIFIED]
+    if not tagged:
+        return
+    possible = {found.centeredOn for found in Chem.FindPotentialStereo(Chem.Mol(mol), cleanIt=False, flagPossible=True)}
+    for atom in tagged:
+        if atom.GetIdx() not in possible:
+            atom.SetChiralTag(Chem.ChiralType.CHI_UNSPECIFIED)
+    mol.SetIntProp("_StereochemDone", 1)
