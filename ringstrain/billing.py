@@ -29,6 +29,8 @@ from ringstrain.tables.ring_prices import ring_value
 __all__ = ["GroupMap", "Parties", "axial_sites", "make_ledger", "parties_of", "ring_strain"]
 #: How much of its A-value a group pays by where it points; on a twist-boat axis a third.
 _FACTORS = {"axial": 1.0, "isoclinal": 1 / 3, "equatorial": 0.0}
+#: What the axial oxygen of a sulfone costs: nothing, since one is axial in every chair.
+_NOTHING = Price(value_kcal=0.0, row="symmetry/sulfone", source="symmetry", known_by="common practice")
 
 
 @dataclass(slots=True)
@@ -112,6 +114,8 @@ def _charge_sites(
             and parties.place(geometry, site.ring, atom).is_plain
         ):
             price = parties.book.rule("tert-butyl-axial-chair", "tert-butyl")
+        elif group.kind == "oxo" and _has_two_oxo(parties, atom):
+            price = _NOTHING
         else:
             price = parties.site_price(geometry, site.ring, atom, neighbour)
         covers = [c for c in _paths_of(geometry, gauche, site.ring, atom, neighbour) if not bill.has_paid(c)]
@@ -120,6 +124,11 @@ def _charge_sites(
             a, b, c, d = contact.atoms
             half = None if price.value_kcal is None else price.value_kcal * factor / 2
             charged.paths[(a, b, c, d)] = charged.paths[(d, c, b, a)] = half
+
+
+def _has_two_oxo(parties: Parties, atom: int) -> bool:
+    """True for a sulfone: one oxygen is axial in every chair, so that nothing is charged."""
+    return sum(home == atom and group.kind == "oxo" for (home, _), group in parties.groups.items()) == 2
 
 
 def _paths_of(geometry: Geometry, gauche: tuple[Contact, ...], ring: int, atom: int, neighbour: int) -> list[Contact]:

@@ -164,19 +164,21 @@ def _cards(geometry: Geometry) -> _Cards:
             (site, occupant_of(geometry.structure, site))
             for sites in ring
             for site in sites
-            if not (site.face == 0 and _is_double(geometry, site))
+            if not _is_set_aside(geometry, site)
         ]
         for ring in geometry.sites
     ]
     return rings, {}
 
 
-def _is_double(geometry: Geometry, site: Site) -> bool:
-    """True for an exocyclic double bond and for substituents in the plane of a flat ring bond."""
-    if site.neighbour < 0 or geometry.structure.bond(site.ring_atom, site.neighbour).order == 2:
-        return True
+def _is_set_aside(geometry: Geometry, site: Site) -> bool:
+    """True for sites that are neither axial nor equatorial: on a flat ring bond, or doubly bound to a planar atom."""
     ring = geometry.system.rings[site.ring]
-    return ring.flat_bond is not None and site.place in (ring.flat_bond, (ring.flat_bond + 1) % 6)
+    if ring.flat_bond is not None and site.place in (ring.flat_bond, (ring.flat_bond + 1) % 6):
+        return True
+    if site.face:
+        return False
+    return site.neighbour < 0 or geometry.structure.bond(site.ring_atom, site.neighbour).order == 2
 
 
 def _gauche(state: Shapes) -> list[tuple[Path, float]]:

@@ -172,8 +172,15 @@ class Geometry:
                         continue
                     if rings_at[a] & rings_at[b] & rings_at[c] & rings_at[d]:
                         continue
+                    if self._is_pinned(a, b) or self._is_pinned(d, c):
+                        continue
                     found.append(Path((a, b, c, d), tuple([(n, p, front[a] + back[d]) for n, p, front, back in views])))
         return tuple(found)
+
+    def _is_pinned(self, outer: int, ring_atom: int) -> bool:
+        """True when a neighbour is tied back in a three-membered ring, so that it stands at no tetrahedral site."""
+        around = self.structure.neighbours
+        return any(outer in around[n] for n in around[ring_atom] if n != outer)
 
     def _view(self, number: int, place: int, b: int) -> tuple[int, int, dict[int, float], dict[int, float]]:
         """A ring bond seen from one ring: offsets of the neighbours of b and of those of its partner."""

@@ -119,19 +119,22 @@ def find_ring_systems(structure: Structure) -> tuple[tuple[RingSystem, ...], tup
     plain = [ring for ring in sixes if not all(structure.atoms[a].aromatic for a in ring)]
     if not plain:
         raise OutOfScope(*_why_nothing(structure, sixes, fragment))
-    graph: nx.Graph[int] = nx.Graph()
-    graph.add_nodes_from(range(len(plain)))
-    sets = [frozenset(ring) for ring in plain]
-    for i, first in enumerate(sets):
-        graph.add_edges_from((i, j) for j in range(i) if first & sets[j])
-    systems: list[RingSystem] = []
+    typed: list[Ring] = []
     unfit: list[Unfit] = []
-    for members in nx.connected_components(graph):
-        outcome = _build_system(structure, sorted((plain[i] for i in members), key=min))
+    kinds: dict[int, AtomKind] = {}
+    for atoms in plain:
+        outcome = _fit_ring(structure, atoms, kinds)
         if isinstance(outcome, Unfit):
             unfit.append(outcome)
         else:
-            systems.append(outcome)
+            typed.append(outcome)
+    systems: list[RingSystem] = []
+    for rings in _connected(typed):
+        system = _build_system(structure, rings, kinds)
+        if isinstance(system, Unfit):
+            unfit.append(system)
+        else:
+            systems.append(system)
     if not systems:
         worst = min(unfit, key=lambda u: u.atoms)
         raise OutOfScope(worst.reason, "Ask about a part the model covers.", atoms=worst.atoms)
@@ -205,21 +208,32 @@ def _is_chordless(structure: Structure, ring: tuple[int, ...]) -> bool:
     return all(len(members.intersection(structure.neighbours[a])) == 2 for a in ring)
 
 
-def _build_system(structure: Structure, rings: list[tuple[int, ...]]) -> RingSystem | Unfit:
+def _connected(rings: list[Ring]) -> list[list[Ring]]:
+    """Rings that share atoms, put together; each group ordered by lowest atom."""
+    if len(rings) < 2:
+        return [rings] if rings else []
+    graph: nx.Graph[int] = nx.Graph()
+    graph.add_nodes_from(range(len(rings)))
+    sets = [frozenset(ring.atoms) for ring in rings]
+    for i, first in enumerate(sets):
+        graph.add_edges_from((i, j) for j in range(i) if first & sets[j])
+    groups = [sorted((rings[i] for i in part), key=lambda r: min(r.atoms)) for part in nx.connected_components(graph)]
+    return sorted(groups, key=lambda group: min(group[0].atoms))
+
+
+def _fit_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, AtomKind]) -> Ring | Unfit:
+    """A ring with its template, or why the model has none for it."""
+    for atom in atoms:
+        if structure.atoms[atom].number not in RING_ELEMENTS:
+            symbol = structure.atoms[atom].element
+            return Unfit(atoms, f"{symbol} in the ring is outside the price tables.")
+        kinds.setdefault(atom, atom_kind(structure, atom))
+    return _typed_ring(structure, atoms, kinds)
+
+
+def _build_system(structure: Structure, rings: list[Ring], kinds: dict[int, AtomKind]) -> RingSystem | Unfit:
     """One ring system from its rings, or why it does not fit the model."""
-    typed: list[Ring] = []
-    kinds: dict[int, AtomKind] = {}
-    for atoms in rings:
-        for atom in atoms:
-            if structure.atoms[atom].number not in RING_ELEMENTS:
-                symbol = structure.atoms[atom].element
-                return Unfit(atoms, f"{symbol} in the ring is outside the price tables.")
-            kinds.setdefault(atom, atom_kind(structure, atom))
-        ring = _typed_ring(structure, atoms, kinds)
-        if isinstance(ring, Unfit):
-            return ring
-        typed.append(ring)
-    everything = tuple(sorted(kinds))
+    everything = tuple(sorted({atom for ring in rings for atom in ring.atoms}))
     members = frozenset(everything)
     companions = []
     large = False
@@ -233,10 +247,10 @@ def _build_system(structure: Structure, rings: list[tuple[int, ...]]) -> RingSys
             companions.append(tuple(int(a) for a in other))
         large |= size >= _MACROCYCLE
     return RingSystem(
-        rings=tuple(typed),
-        blocks=_blocks(typed),
+        rings=tuple(rings),
+        blocks=_blocks(rings),
         atoms=everything,
-        kinds=kinds,
+        kinds={atom: kinds[atom] for atom in everything},
         companions=tuple(sorted(companions)),
         large=large,
     )
@@ -272,11 +286,11 @@ def atom_kind(structure: Structure, atom: int) -> AtomKind:
 
 
 def _is_planar_nitrogen(structure: Structure, atom: int) -> bool:
-    """True for amide, urethane, sulfonamide, nitroso, enamine and aryl nitrogen."""
+    """True for amide, urethane, sulfonamide, nitroso and enamine nitrogen; aryl amines stay pyramidal."""
     for n in structure.neighbours[atom]:
         record = structure.atoms[n]
         if record.aromatic:
-            return True
+            continue
         doubles = [m for m in structure.neighbours[n] if m != atom and structure.bond(n, m).order == 2]
         if not doubles:
             continue
@@ -286,33 +300,32 @@ def _is_planar_nitrogen(structure: Structure, atom: int) -> bool:
 
 
 def _typed_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, AtomKind]) -> Ring | Unfit:
-    """The ring with its template: how many flat bonds it has decides."""
-    flat: list[int] = []
+    """The ring with its template: how many flat bonds it has decides.
+
+    A double, aromatic, ester or amide bond or a fused three-membered ring makes a half-chair; one further planar atom,
+    as in an enone, is taken along. Two planar neighbours without such a bond count as one flat bond.
+    """
+    planar = [i for i in range(6) if kinds[atoms[i]] == "sp2"]
+    firm: list[int] = []
+    loose: list[int] = []
     for i in range(6):
         a, b = atoms[i], atoms[(i + 1) % 6]
         bond = structure.bond(a, b)
-        if bond.aromatic or bond.order == 2 or _in_small_ring(structure, a, b) or _is_flat_pair(structure, a, b, kinds):
-            flat.append(i)
+        if bond.aromatic or bond.order == 2 or _in_small_ring(structure, a, b) or _is_acyl_bond(structure, a, b, kinds):
+            firm.append(i)
+        elif kinds[a] == "sp2" and kinds[b] == "sp2":
+            loose.append(i)
+    flat = firm or loose
     if not flat:
-        planar = [i for i in range(6) if kinds[atoms[i]] == "sp2"]
-        if len(planar) > 1 and not _spread_apart(planar):
-            return Unfit(atoms, "Two neighbouring ring atoms are flat.")
         if len(planar) > 2:
             return Unfit(atoms, "Three or more ring atoms are flat.")
         return Ring(atoms=atoms)
-    if len(flat) > 1:
+    spare = [i for i in planar if i not in (flat[0], (flat[0] + 1) % 6)]
+    if len(flat) > 1 or len(spare) > 1:
         return Unfit(
             atoms, "The ring has two or more flat bonds (diene, anhydride, imide, quinone or two fused flat rings)."
         )
-    spare = [i for i in range(6) if kinds[atoms[i]] == "sp2" and i not in (flat[0], (flat[0] + 1) % 6)]
-    if spare:
-        return Unfit(atoms, "The ring has a flat bond and a further flat atom.")
     return Ring(atoms=atoms, kind="half-chair", flat_bond=flat[0])
-
-
-def _spread_apart(places: list[int]) -> bool:
-    """True when no two places of the ring are neighbours."""
-    return all((j - i) % 6 not in (1, 5) for i in places for j in places if i != j)
 
 
 def _in_small_ring(structure: Structure, a: int, b: int) -> bool:
@@ -320,8 +333,8 @@ def _in_small_ring(structure: Structure, a: int, b: int) -> bool:
     return bool(set(structure.neighbours[a]) & set(structure.neighbours[b]))
 
 
-def _is_flat_pair(structure: Structure, a: int, b: int, kinds: dict[int, AtomKind]) -> bool:
-    """True for an ester C(=O)-O or amide C(=O)-N bond and for two planar neighbours."""
+def _is_acyl_bond(structure: Structure, a: int, b: int, kinds: dict[int, AtomKind]) -> bool:
+    """True for an ester C(=O)-O or amide C(=O)-N bond."""
     for first, second in ((a, b), (b, a)):
         if kinds[first] != "sp2" or structure.atoms[first].number != 6:
             continue
@@ -332,4 +345,4 @@ def _is_flat_pair(structure: Structure, a: int, b: int, kinds: dict[int, AtomKin
         )
         if carbonyl and (number == 8 or (number == 7 and kinds[second] == "sp2")):
             return True
-    return kinds[a] == "sp2" and kinds[b] == "sp2"
+    return False

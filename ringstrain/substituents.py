@@ -56,7 +56,8 @@ def describe_group(structure: Structure, first: int, ring_atom: int, system: fro
     if key is None:
         plain, _, _ = branch_code(structure, first, ring_atom, system, stereo=False, isotopes=False)
         key = _group_index(tables).get(plain)
-    label = key or f"{kind} {_formula(structure, members)}"
+    size = next((len(r) for r in structure.rings if first in r and ring_atom in r), 0)
+    label = key or (f"{kind} in a {size}-ring" if size else f"{kind} {_formula(structure, members)}")
     return _group(structure, first, label, code, mirror, kind, tabulated=key is not None)
 
 

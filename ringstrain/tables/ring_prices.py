@@ -152,7 +152,10 @@ def _select(book: PriceBook, key: str) -> Selection | None:
     default = book.tables.row("rules/ring-value").uncertainty or 0.0
     from ringstrain.tables.conditions import NEAREST
 
-    order = {conditions.medium: 0, "any": 1, **{m: i + 2 for i, m in enumerate(NEAREST[conditions.medium])}}
+    nearest = NEAREST[conditions.medium]
+    if "ium/" in key:  # an ion's gas-phase number says little about any solution
+        nearest = (*(m for m in nearest if m != "gas"), *(m for m in nearest if m == "gas"))
+    order = {conditions.medium: 0, "any": 1, **{m: i + 2 for i, m in enumerate(nearest)}}
     preferred = {
         p.row: p.uncertainty
         for medium in (conditions.medium, "any")
@@ -200,6 +203,11 @@ def _scaled_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
         anomeric = place.has_near("O", "S") and group.kind in ("oxy", "acyloxy", "silyloxy", "halogen", "sulfanyl")
         shift = book.rule("anomeric-shift", group.key) if anomeric else None
         value = own.value_kcal + ((shift.value_kcal or 0.0) if shift else 0.0)
+        for distance, rule in ((2, "cation-3"), (3, "cation-4")):
+            if any(place.symbols[d] in ("NH+", "NR+") for d in {distance, 6 - distance}):
+                shifted_by = book.rule(rule, group.key)
+                value += shifted_by.value_kcal or 0.0
+                terms = (*terms, *shifted_by.terms)
         if group.kind in ("sulfinyl", "sulfonyl"):
             value += (book.rule("beta-oxygen-shift", group.key).value_kcal or 0.0) * sum(
                 place.symbols[d] == "O" for d in (2, 4)
