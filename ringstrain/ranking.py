@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from importlib import import_module
 from typing import Any, Literal
 
 from ringstrain.results import SCHEMA
@@ -162,11 +163,9 @@ class Ranking:
         }
 
     def _repr_html_(self) -> str:
-        from ringstrain.views.notebook import ranking_html
-
-        return ranking_html(self)
+        text: str = import_module("ringstrain.views.notebook").ranking_html(self)
+        return text
 
     def _repr_svg_(self) -> str:
-        from ringstrain.views.notebook import ranking_svg
-
-        return ranking_svg(self)
+        text: str = import_module("ringstrain.views.notebook").ranking_svg(self)
+        return text

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from importlib import import_module
 from typing import Any
 
 from ringstrain.billing import GroupMap
@@ -232,3 +233,12 @@ class Analysis:
             "ring_systems": [result.as_dict() for result in self.ring_systems],
             "notes": list(self.notes),
         }
+
+    def _repr_html_(self) -> str:
+        """The report, for notebooks; views are looked up by name because they build on this record."""
+        text: str = import_module("ringstrain.views.notebook").analysis_html(self)
+        return text
+
+    def _repr_svg_(self) -> str:
+        text: str = import_module("ringstrain.views.notebook").analysis_svg(self)
+        return text

@@ -12,6 +12,8 @@ from ringstrain.views.forms import describe
 from ringstrain.views.look import Look, constant, kelvin, percent, percent_range
 
 _SIZE, _SMALL, _MARGIN, _ROW = 12.5, 11.0, 14.0, 30.0
+#: States that never reach this share get no line in a graph [-].
+_WORTH_A_LINE = 0.01
 #: Lines of a graph: width and dash tell them apart without colour.
 _LINES: tuple[tuple[Role, float, tuple[float, ...]], ...] = (
     ("equatorial", 2.4, ()),
@@ -98,9 +100,10 @@ def draw_ladder(rungs: Sequence[Rung], look: Look, *, title: str, foot: str = ""
         return left + plot * (min(max(value, low), high) - low) / (high - low)
 
     bottom = top + _ROW * 1.35 * len(rungs)
-    for tick in _ticks(low, high, look):
+    ticks = _ticks(low, high, look)
+    for tick, text in ticks:
         items.append(Stroke(((across(tick), top - 4.0), (across(tick), bottom)), "rule", 1.0))
-        items.append(Label(across(tick), bottom + 13.0, ((look.energy(tick).removesuffix(".00").removesuffix(".0"), ""),), "muted", _SMALL, "middle"))
+        items.append(Label(across(tick), bottom + 13.0, ((text, ""),), "muted", _SMALL, "middle"))
     for share in (0.0, 0.5, 1.0):
         x = bar_left + bar * share
         items.append(Stroke(((x, top - 4.0), (x, bottom)), "rule", 1.0))
@@ -108,7 +111,7 @@ def draw_ladder(rungs: Sequence[Rung], look: Look, *, title: str, foot: str = ""
     for place, rung in enumerate(rungs):
         y = top + 12.0 + _ROW * 1.35 * place
         items.append(Label(_MARGIN, y + 4.5, ((rung.name, ""),), "ink", 14.0, "start", True))
-        items.append(Label(left, y + 22.0, ((_cut(rung.words, bar_left + bar - left), ""),), "muted", _SMALL))
+        items.append(Label(left, y + 22.0, ((_cut(rung.words, bar_left + bar - left), ""),), "muted", _SMALL, kind="mark"))
         items += _energy(rung, y, across, look, left + plot)
         items += _share(rung, y, bar_left, bar)
     end = bottom + 22.0
@@ -129,13 +132,15 @@ def _cut(text: str, room: float) -> str:
     return text.rstrip() + "..."
 
 
-def _ticks(low: float, high: float, look: Look) -> list[float]:
-    """Round values of the asked unit within a range [kcal/mol]."""
+def _ticks(low: float, high: float, look: Look) -> list[tuple[float, str]]:
+    """Round values of the asked unit within a range [kcal/mol], and how they are written."""
     factor = KJ_PER_KCAL if look.units == "kJ" else 1.0
     span = (high - low) * factor
     step = next(s for s in (0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 1000.0) if span / s <= 6)
     first = int(low * factor / step)
-    return [i * step / factor for i in range(first, int(high * factor / step + 1e-9) + 1)]
+    digits = 0 if step >= 1 else 1
+    places = range(first, int(high * factor / step + 1e-9) + 1)
+    return [(i * step / factor, f"{i * step:.{digits}f}".replace("-", "\N{MINUS SIGN}")) for i in places]
 
 
 def _energy(rung: Rung, y: float, across: object, look: Look, right: float) -> list[Item]:
@@ -209,7 +214,8 @@ def draw_temperatures(answers: Sequence[Analysis], place: int, look: Look) -> Sc
                 continue
             name = names.setdefault(_key(state), state.id)
             tracks.setdefault(_key(state), (name, []))[1].append((analysis.temperature_K, state.population))
-    shown = sorted(tracks.values(), key=lambda track: -max(p for _, p in track[1]))[: len(_LINES)]
+    ranked = sorted(tracks.values(), key=lambda track: -max(p for _, p in track[1]))[: len(_LINES)]
+    shown = [t for n, t in enumerate(ranked) if n < 2 or max(p for _, p in t[1]) >= _WORTH_A_LINE]
     low, high = answers[0].temperature_K, answers[-1].temperature_K
     left, top, wide, high_px = _MARGIN + 46.0, _MARGIN + 34.0, 380.0, 220.0
 

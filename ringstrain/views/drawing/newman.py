@@ -104,7 +104,7 @@ def _mirrored(spoke: Spoke, start: float, end: float) -> Spoke:
 
 def _ring_spoke(geometry: Geometry, atom: int, angle: float) -> Spoke:
     record = geometry.structure.atoms[atom]
-    return Spoke(atom, angle, (f"{record.element}{atom + 1}",), "ink", True)
+    return Spoke(atom, angle, (record.element,), "ink", True)
 
 
 def _site_spoke(result: SystemResult, state: State, site: Site, angle: float) -> Spoke:
@@ -180,10 +180,16 @@ def dihedral_lines(front: tuple[Spoke, ...], back: tuple[Spoke, ...]) -> tuple[s
             if a.heavy and b.heavy:
                 angle = wrap(b.angle - a.angle)
                 word = " gauche" if is_gauche(angle) else " eclipsed" if abs(angle) < 30 else " anti" if abs(angle) > 142 else ""
-                first, second = ("".join(text for text, _ in runs_of(s.pieces)) for s in (a, b))
+                first, second = (_name(s) for s in (a, b))
                 sign = "\N{MINUS SIGN}" if angle < -0.5 else ""
                 lines.append(f"{first}/{second} {sign}{abs(angle):.0f}\N{DEGREE SIGN}{word}")
     return tuple(lines)
+
+
+def _name(spoke: Spoke) -> str:
+    """A partner in words; ring atoms by number."""
+    text = "".join(text for text, _ in runs_of(spoke.pieces))
+    return f"{text}{spoke.neighbour + 1}" if spoke.role == "ink" else text
 
 
 def _at(radius: float, angle: float) -> tuple[float, float]:
@@ -207,7 +213,7 @@ def _end(
     """Draw a bond and set its label."""
     way = tip[0] - root[0], tip[1] - root[1]
     bold = spoke.role == "axial"
-    number = str(spoke.neighbour + 1) if numbers and spoke.heavy and spoke.role != "ink" else ""
+    number = str(spoke.neighbour + 1) if spoke.heavy and (numbers or spoke.role == "ink") else ""
     size = _SIZE if spoke.heavy else 12.5
     written = write_group(board, root, way, spoke.pieces, size=size, role=spoke.role, bold=bold, number=number)
     width = 3.4 if bold else 1.8 if spoke.heavy else 1.1

@@ -154,3 +154,15 @@ def stacked(scenes: Sequence[Scene], title: str) -> Scene:
     return Scene(
         width=max((s.width for s in scenes), default=10.0), height=max(y - 8.0, 10.0), items=tuple(items), title=title
     )
+
+
+def side_by_side(scenes: Sequence[Scene], title: str) -> Scene:
+    """Scenes in a row."""
+    items: list[Item] = []
+    x = 0.0
+    for scene in scenes:
+        items += [moved(item, x, 0.0) for item in scene.items]
+        x += scene.width + 8.0
+    return Scene(
+        width=max(x - 8.0, 10.0), height=max((s.height for s in scenes), default=10.0), items=tuple(items), title=title
+    )

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Sequence
 
 from ringstrain.analysis import Analysis, State, SystemResult
 from ringstrain.views.drawing.panels import caption_lines
-from ringstrain.views.drawing.scene import Label, Scene, Stroke
+from ringstrain.views.drawing.scene import Label, Scene, Shape, Stroke
 from ringstrain.views.drawing.states import Wishes, draw_state
 from ringstrain.views.look import Look
 from ringstrain.views.rich_tables import equilibrium_line
@@ -18,7 +19,7 @@ MAX_COLUMNS = 60
 _DOTS = ((0x01, 0x08), (0x02, 0x10), (0x04, 0x20), (0x40, 0x80))
 
 
-def to_text(scene: Scene, look: Look) -> str:
+def to_text(scene: Scene, look: Look, *, columns: int = 0) -> str:
     """A scene in characters.
 
     Parameters
@@ -27,20 +28,24 @@ def to_text(scene: Scene, look: Look) -> str:
         What to draw.
     look
         Width to keep to [columns], and whether to keep to ASCII.
+    columns
+        How wide to draw [columns]; what suits a ring, at most 60, when 0.
 
     Returns
     -------
     str
         Lines without trailing blanks, each ended by a newline.
     """
-    columns = max(20, min(look.width, MAX_COLUMNS, round(scene.width / _COLUMN)))
+    columns = max(20, min(columns or MAX_COLUMNS, look.width, round(scene.width / _COLUMN)))
     per_column = scene.width / columns
     rows = max(1, round(scene.height / (per_column * _ASPECT)) + 1)
     canvas = _Canvas(columns, rows, per_column, look)
     for item in scene.items:
         # The saw-tooth of a clash is too small for characters; the dotted line stays.
-        if isinstance(item, Stroke) and item.role != "paper" and (item.role != "clash" or item.dash):
+        if isinstance(item, Stroke) and item.role not in ("paper", "rule") and (item.role != "clash" or item.dash):
             canvas.stroke(item)
+        elif isinstance(item, Shape) and item.role != "paper":
+            canvas.shape(item)
     for item in sorted(scene.labels, key=lambda label: label.kind == "number"):
         canvas.label(item)
     return canvas.text()
@@ -105,6 +110,15 @@ class _Canvas:
                 self._ascii_line(first, second, item)
             else:
                 self._dot_line(first, second, item)
+
+    def shape(self, item: Shape) -> None:
+        """The outline of a shape."""
+        corners = item.points
+        if item.radius is not None:
+            (x, y), *_ = item.points
+            turns = [2 * math.pi * i / 24 for i in range(24)]
+            corners = tuple((x + item.radius * math.cos(t), y + item.radius * math.sin(t)) for t in turns)
+        self.stroke(Stroke((*corners, corners[0]), item.role))
 
     def _dot_line(self, first: tuple[float, float], second: tuple[float, float], item: Stroke) -> None:
         fine_x, fine_y = 2.0 / self.per_column, 4.0 / self.per_row
