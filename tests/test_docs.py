@@ -11,8 +11,9 @@ from typing import Any
 
 import pytest
 import typer
-from documents import CHECKOUT, DOCUMENTS, EXAMPLES, README, Block, agrees, blocks, dialogues, play, read, scratch
 from ringstrain.cli.app import build_app, command_names
+
+from documents import CHECKOUT, DOCUMENTS, EXAMPLES, README, Block, agrees, blocks, dialogues, play, read, scratch
 
 DEVELOPERS = CHECKOUT / "DEVELOPERS.md"
 TABLES = CHECKOUT / "tables"
