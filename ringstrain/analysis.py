@@ -4,12 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from ringstrain.billing import GroupMap, parties_of
+from ringstrain.billing import GroupMap
 from ringstrain.equilibrium import Equilibrium, Population, compare, mixture_energy, populations
 from ringstrain.errors import MissingValue
 from ringstrain.ledger import regime_of
 from ringstrain.provenance import combined_sigma
-from ringstrain.pyranose import chair_form, find_sugar
+from ringstrain.pyranose import chair_form
 from ringstrain.results import SCHEMA, Analysis, Detail, State, SystemResult
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
@@ -111,14 +111,13 @@ def _analyze_system(structure: Structure, system: RingSystem, book: PriceBook) -
     priced, copies, sets = _sorted_forms(priced, groups, book)
     shares = _shares(priced, sets, book)
     ids = [_letter(i) for i in range(len(priced))]
-    sugar = find_sugar(resolved.geometry, parties_of(resolved.geometry, groups, book))
     states = tuple(
         _make_state(
             ids[i],
             detail,
             None if copies[i] is None else ids[copies[i] or 0],
             shares[i],
-            chair_form(detail.shapes, sugar) if sugar else "",
+            chair_form(detail.shapes),
         )
         for i, detail in enumerate(priced)
     )

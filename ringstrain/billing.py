@@ -77,7 +77,7 @@ def make_ledger(state: Shapes, facts: Survey, parties: Parties, twisting: frozen
     charge_shapes(state, parties, bill)
     charge_companions(state.geometry, parties.book, bill)
     charge_allylic(state.geometry, facts, parties, bill)
-    charge_across(facts, parties, bill)
+    charge_across(state, facts, parties, bill)
     return bill.settle()
 
 
@@ -248,7 +248,10 @@ def _charge_facing(contact: Contact, parties: Parties, bill: Bill, charged: _Cha
 
 
 def ring_strain(facts: Survey, ledger: Ledger, geometry: Geometry) -> dict[int, float]:
-    """What each ring pays for its own axial groups and syn-axial pairs [kcal/mol]."""
+    """What each ring pays for its own axial groups and syn-axial pairs [kcal/mol].
+
+    Pairs of dipoles are left out: nothing says that a twist-boat relieves them.
+    """
     totals: dict[int, float] = {}
     for line in ledger.lines:
         value = line.value_kcal or 0.0
@@ -259,7 +262,7 @@ def ring_strain(facts: Survey, ledger: Ledger, geometry: Geometry) -> dict[int, 
                 ring = ring if ring is not None else shared_ring(geometry, c, b, a)
                 if ring is not None:
                     totals[ring] = totals.get(ring, 0.0) + value / 2
-        elif line.rule == "syn-axial":
+        elif line.rule == "syn-axial" and not line.polar:
             for contact in line.covers:
                 ring = shared_ring(geometry, *contact.atoms[1:4])
                 if ring is not None:

@@ -112,14 +112,16 @@ def charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: Bi
             bill.charge("A(1,3) strain", (group.key,), (placed.site.neighbour, int(end)), price)
 
 
-def charge_across(facts: Survey, parties: Parties, bill: Bill) -> None:
-    """Two axial halogens on opposite atoms of a ring: their dipoles attract."""
+def charge_across(state: Shapes, facts: Survey, parties: Parties, bill: Bill) -> None:
+    """Two axial halogens on opposite atoms and faces of a chair: their antiparallel dipoles attract."""
     if sum(group.kind == "halogen" for group in parties.groups.values()) < 2:
         return
     axial = {(p.site.ring, p.site.place): p.site for p in axial_sites(facts)}
     for (ring, place), first in axial.items():
         second = axial.get((ring, place + 3))
-        if second is None or not parties.names[ring].is_carbocycle:
+        if second is None or second.face == first.face or not parties.names[ring].is_carbocycle:
+            continue
+        if state.rings[ring].shape != "chair":
             continue
         x = parties.groups[(first.ring_atom, first.neighbour)]
         y = parties.groups[(second.ring_atom, second.neighbour)]

@@ -219,8 +219,40 @@ def _put(bill: Bill, book: PriceBook, row: str, atoms: tuple[int, ...]) -> None:
     bill.charge("pyranose set", (row.removeprefix("angyal-"),), atoms, price)
 
 
-def chair_form(state: Shapes, sugar: Sugar) -> str:
-    """``4C1`` or ``1C4`` of a pyranose chair, empty for other shapes.
+def pyranose_order(geometry: Geometry) -> tuple[int, ...] | None:
+    """Ring atoms from C1 to C5 and the ring oxygen of a pyranose skeleton, whatever its groups; None for other rings.
+
+    Notes
+    -----
+    A pyranose skeleton is a lone oxane with an oxygen, nitrogen, sulfur or halogen on one neighbour of the ring oxygen
+    only, and at least two more oxygens or nitrogens on the other carbons.
+    """
+    system, structure = geometry.system, geometry.structure
+    if len(system.rings) != 1 or system.rings[0].kind != "chair":
+        return None
+    atoms = system.rings[0].atoms
+    oxygens = [i for i, a in enumerate(atoms) if structure.atoms[a].number != 6]
+    if len(oxygens) != 1 or structure.atoms[atoms[oxygens[0]]].number != 8:
+        return None
+    forward = tuple(atoms[(oxygens[0] + k) % 6] for k in range(1, 6))
+    hetero = {a: _hetero_on(geometry, a) for a in forward}
+    if sum(bool(hetero[a] & {7, 8}) for a in forward) < _CYCLITOL_OXYGENS:
+        return None
+    ends = (bool(hetero[forward[0]]), bool(hetero[forward[4]]))
+    if ends == (True, False):
+        return (*forward, atoms[oxygens[0]])
+    return (*forward[::-1], atoms[oxygens[0]]) if ends == (False, True) else None
+
+
+def _hetero_on(geometry: Geometry, atom: int) -> set[int]:
+    """Atomic numbers of the heteroatoms a ring carbon carries."""
+    members = geometry.system.atom_set
+    numbers = {geometry.structure.atoms[n].number for n in geometry.structure.neighbours[atom] if n not in members}
+    return numbers - {1, 6}
+
+
+def chair_form(state: Shapes) -> str:
+    """``4C1`` or ``1C4`` of a pyranose chair, empty for other rings and shapes.
 
     Notes
     -----
@@ -228,10 +260,11 @@ def chair_form(state: Shapes, sugar: Sugar) -> str:
     numbered clockwise; the torsion C1-C2-C3-C4 is then negative.
     """
     ring = state.rings[0]
-    if ring.shape != "chair" or not sugar.is_pyranose:
+    order = pyranose_order(state.geometry)
+    if ring.shape != "chair" or order is None:
         return ""
     atoms = state.geometry.system.rings[0].atoms
-    place = atoms.index(sugar.order[1])
-    forward = atoms[(place + 1) % 6] == sugar.order[2]
+    place = atoms.index(order[1])
+    forward = atoms[(place + 1) % 6] == order[2]
     torsion = ring.torsions[place if forward else place - 1]
     return "4C1" if torsion < 0 else "1C4"

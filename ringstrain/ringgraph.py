@@ -62,6 +62,8 @@ class RingSystem:
         ``"sp3"``, ``"sp2"`` or ``"inverting"`` (three-coordinate nitrogen) of each ring atom.
     companions
         Rings of five or seven members that share atoms with the system.
+    pinned
+        Three-membered rings that share a bond with it.
     large
         True when a ring of eight or more members is fused on.
     """
@@ -71,6 +73,7 @@ class RingSystem:
     atoms: tuple[int, ...]
     kinds: dict[int, AtomKind]
     companions: tuple[tuple[int, ...], ...] = ()
+    pinned: tuple[tuple[int, ...], ...] = ()
     large: bool = False
 
     @cached_property
@@ -158,6 +161,11 @@ def _why_nothing(structure: Structure, sixes: list[tuple[int, ...]], fragment: f
             "The six-membered rings are all aromatic and flat.",
             "Give a molecule with a saturated six-membered ring.",
         )
+    if _cycles_of_six(structure, {int(a) for ring in rings if len(ring) < 6 for a in ring}):
+        return (
+            "The only six-membered ring is the boat around a one-atom bridge, where exo and endo have no price.",
+            "Give a molecule with a saturated six-membered ring of its own.",
+        )
     sizes = ", ".join(str(size) for size in sorted({len(ring) for ring in rings}))
     word = "a macrocycle" if min(len(ring) for ring in rings) > _MACROCYCLE else f"rings of {sizes} members"
     return (
@@ -228,7 +236,30 @@ def _fit_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, Ato
             symbol = structure.atoms[atom].element
             return Unfit(atoms, f"{symbol} in the ring is outside the price tables.")
         kinds.setdefault(atom, atom_kind(structure, atom))
+    fault = _impossible(structure, atoms)
+    if fault:
+        return Unfit(atoms, fault)
     return _typed_ring(structure, atoms, kinds)
+
+
+def _impossible(structure: Structure, atoms: tuple[int, ...]) -> str:
+    """Why no price fits a ring as it is written: open shells, ions of carbon, triple and trans double bonds."""
+    for atom in atoms:
+        record = structure.atoms[atom]
+        if record.radicals:
+            return "A ring atom has an unpaired electron; the tables hold closed shells only."
+        if record.number == 6 and record.charge:
+            return "A ring carbon is charged; the tables hold neutral carbon only."
+    for i in range(6):
+        a, b = atoms[i], atoms[(i + 1) % 6]
+        bond = structure.bond(a, b)
+        if bond.order == 3:
+            return "A six-membered ring cannot hold a triple bond."
+        if bond.stereo and bond.stereo_atoms is not None:
+            inside = sum(end in atoms for end in bond.stereo_atoms)
+            if (bond.stereo == "trans") == (inside != 1):
+                return "A six-membered ring cannot hold a trans double bond."
+    return ""
 
 
 def _build_system(structure: Structure, rings: list[Ring], kinds: dict[int, AtomKind]) -> RingSystem | Unfit:
@@ -236,6 +267,7 @@ def _build_system(structure: Structure, rings: list[Ring], kinds: dict[int, Atom
     everything = tuple(sorted({atom for ring in rings for atom in ring.atoms}))
     members = frozenset(everything)
     companions = []
+    pinned = []
     large = False
     for other in structure.rings:
         size, shared = len(other), members.intersection(other)
@@ -243,16 +275,35 @@ def _build_system(structure: Structure, rings: list[Ring], kinds: dict[int, Atom
             continue
         if size == 4:
             return Unfit(everything, "A four-membered ring is fused on; its strain is outside the price tables.")
+        if size == 3:
+            pinned.append(tuple(int(a) for a in other))
         if size in (5, 7):
             companions.append(tuple(int(a) for a in other))
         large |= size >= _MACROCYCLE
+    own_kinds: dict[int, AtomKind] = {
+        atom: "sp3"
+        if kinds[atom] == "inverting" and _is_bridgehead(structure, atom, rings, companions)
+        else kinds[atom]
+        for atom in everything
+    }
     return RingSystem(
         rings=tuple(rings),
         blocks=_blocks(rings),
         atoms=everything,
-        kinds={atom: kinds[atom] for atom in everything},
+        kinds=own_kinds,
         companions=tuple(sorted(companions)),
+        pinned=tuple(sorted(pinned)),
         large=large,
+    )
+
+
+def _is_bridgehead(structure: Structure, atom: int, rings: list[Ring], companions: list[tuple[int, ...]]) -> bool:
+    """True for a nitrogen that a cage keeps from inverting: all its bonds lie in rings that share more than a bond."""
+    sets = [set(ring.atoms) for ring in rings if atom in ring.atoms] + [set(c) for c in companions if atom in c]
+    if len(sets) < 2 or not set(structure.neighbours[atom]) <= set().union(*sets):
+        return False
+    return len(structure.neighbours[atom]) == 3 and any(
+        len(first & second) > 2 for i, first in enumerate(sets) for second in sets[:i]
     )
 
 

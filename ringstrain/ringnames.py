@@ -35,6 +35,7 @@ PATTERNS: dict[str, tuple[str, ...]] = {
     "n-methylmorpholine": ("O", "C", "C", "NR", "C", "C"),
     "piperazine": ("NH", "C", "C", "NH", "C", "C"),
     "cyclohexanone": ("C=O", "C", "C", "C", "C", "C"),
+    "1,4-cyclohexanedione": ("C=O", "C", "C", "C=O", "C", "C"),
     "methylenecyclohexane": ("C=C", "C", "C", "C", "C", "C"),
     "1,1-difluorocyclohexane": ("CF2", "C", "C", "C", "C", "C"),
     "cyclohexene": ("flat", "flat", "C", "C", "C", "C"),
@@ -85,6 +86,8 @@ def atom_symbol(structure: Structure, system: RingSystem, ring: Ring, place: int
         if record.charge > 0:
             return "NH+" if record.hydrogens else "NR+"
         if system.kinds[atom] == "sp2":
+            if not outer:
+                return "NH="
             return "N-N=O" if any(structure.atoms[n].number == 7 for n in outer) else "N="
         return "NH" if not outer else "NR"
     if number == 16:

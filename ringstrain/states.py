@@ -173,6 +173,8 @@ def _agree(
 def _suits_companions(geometry: Geometry, number: int, shape: RingShape) -> bool:
     """True when every fused five- or seven-membered ring can close: its bonds here must be gauche, never anti."""
     atoms = geometry.system.rings[number].atoms
+    if not all(_pinned_on_one_face(geometry, number, small) for small in geometry.system.pinned):
+        return False
     for companion in geometry.system.companions:
         size = len(companion)
         if not _same_side(geometry, number, companion):
@@ -192,6 +194,19 @@ def _suits_companions(geometry: Geometry, number: int, shape: RingShape) -> bool
             if abs(torsion) >= GAUCHE[1]:
                 return False
     return True
+
+
+def _pinned_on_one_face(geometry: Geometry, number: int, small: tuple[int, ...]) -> bool:
+    """True unless a three-membered ring is fused trans, which it cannot be."""
+    atoms = geometry.system.rings[number].atoms
+    faces = {
+        site.face
+        for atom in small
+        if atom in atoms
+        for site in geometry.sites[number][atoms.index(atom)]
+        if site.neighbour in small and site.neighbour not in atoms
+    }
+    return len(faces) < 2
 
 
 def _same_side(geometry: Geometry, number: int, companion: tuple[int, ...]) -> bool:

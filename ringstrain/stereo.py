@@ -121,7 +121,8 @@ def _is_lone_centre(geometry: Geometry, atom: int, groups: Groups) -> bool:
 def _is_caged(geometry: Geometry, free: tuple[int, ...]) -> bool:
     """True when every open centre is a bridgehead whose configuration the cage dictates."""
     system = geometry.system
-    return all(len(system.rings_of[a]) + sum(a in ring for ring in system.companions) > 1 for a in free)
+    others = (*system.companions, *system.pinned)
+    return all(len(system.rings_of[a]) + sum(a in ring for ring in others) > 1 for a in free)
 
 
 def stereo_error(structure: Structure, atoms: tuple[int, ...]) -> StereoError:

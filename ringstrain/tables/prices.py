@@ -267,7 +267,7 @@ class PriceBook:
     def _rule(self, name: str, group: str) -> Price:
         claim = self.tables.row(f"rules/{name}")
         return Price(
-            value_kcal=energy_of(claim),
+            value_kcal=None if claim.value is None else energy_of(claim),
             terms=(Term(claim.row, group, 1.0, claim.uncertainty or 0.0),),
             row=claim.row,
             source=claim.source or "estimate",
@@ -282,7 +282,7 @@ class PriceBook:
         """Names a row may call the group, from exact to vague, with the uncertainty each step adds."""
         names = [StandIn(group.key, 0.0)] if group.tabulated else []
         names.extend(kin_of(self.tables, group))
-        vague = names[-1].extra if names else 0.3
+        vague = self.tables.row("rules/class-row").uncertainty or 0.0
         names.extend(StandIn(name, vague) for name in group.names if name.startswith("class:"))
         return names
 

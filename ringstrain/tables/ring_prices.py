@@ -24,6 +24,7 @@ _BASE_RING = {
     "NH": "piperidine",
     "NR": "piperidine",
     "N=": "piperidine",
+    "NH=": "piperidine",
     "N-N=O": "piperidine",
     "NH+": "piperidine",
     "NR+": "n,n-dimethylpiperidinium",
@@ -189,9 +190,11 @@ def _scaled_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
     if own.value_kcal is None:
         return own
     carbon = "carbon" in FAMILIES[group.kind]
-    if place.has_near("N=", "N-N=O"):
+    if place.symbols[0] == "C" and place.has_near("N=", "N-N=O"):
         rule = book.rule("planar-nitrogen-2", group.key)
         return _estimate(rule, f"{place.ring}: group beside a planar nitrogen goes axial")
+    if place.flat_distance == 1 and place.has_near("aromatic"):
+        return _estimate(book.rule("benzylic", group.key), f"{place.ring}: the peri hydrogen meets an equatorial group")
     factor = methyl_factor(book, place)
     if carbon:
         spread = book.rule("ring-carbon", group.key)
