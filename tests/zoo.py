@@ -42,6 +42,15 @@ SKELETONS = (
     ("bicyclo[5.4.0]undecane", "CC1CCC2CCCCCC2C1", 2),
     ("bicyclohexyl", "CC1CCCC(C1)C1CCCCC1", 2),
 )
+#: Rings with heteroatoms, planar atoms and flat bonds, without marks.
+OTHER_RINGS = (
+    *("CC1CCCCO1", "COC1CCCCO1", "CC1OCCC(C)O1", "OC1CCCOC1C", "CC1CCC2OCCCC2C1", "C1CCC2OCCCC2O1", "CC1CSCCS1"),
+    *("CC1CCCCC1=O", "CC1CCC2C(=O)CCCC2C1", "CC1CC(=O)CC(C)C1Cl", "C1CCC2(CC1)OCCCO2", "CC1CCC2(CCCCO2)OC1"),
+    *("CC1COC(C)(C)OC1", "OCC1OC(O)C(O)C(O)C1O", "CC12CCC(=O)CC1CCC1C2CCC2(C)C1CCC2", "CC1CCCCS1(=O)=O"),
+    *("CC1CCC(=C)CC1O", "O=C1CCCCC1Br", "C[N+]1(C)CCCCC1C", "CC1CC2COC(C)OC2OC1", "C1CC2(CCCCO2)OCC1C"),
+    *("C1CCC2=CCCCC2C1", "CC1CCC2CC=CCC2C1", "CC1CCC=CC1C", "C1CCC2c3ccccc3CCC2C1", "CC1CCc2ccccc2C1O"),
+    *("O=C1CCCC(C)O1", "CC12CCC(O)CC1=CCC1C2CCC2(C)C1CCC2", "CC1CC=CCC1(C)O", "CC1(C)CC=CC2CCCCC12"),
+)
 #: Name and SMILES with every centre given (recalled structures of well-known compounds).
 FIXED = (
     ("cholestanol", "C[C@H](CCCC(C)C)[C@H]1CC[C@@H]2[C@@]1(CC[C@H]3[C@H]2CC[C@@H]4[C@@]3(CC[C@@H](C4)O)C)C"),
