@@ -48,11 +48,15 @@ def draw(
     ] = None,
     state: Annotated[
         str | None,
-        typer.Option("--state", metavar="IDS", help="States to draw, e.g. A or A,C; else the important ones.", show_default=False),
+        typer.Option(
+            "--state", metavar="IDS", help="States to draw, e.g. A or A,C; else the important ones.", show_default=False
+        ),
     ] = None,
     newman: Annotated[
         str | None,
-        typer.Option("--newman", metavar="FRONT,BACK", help="Look down a ring bond, e.g. 1,2 (from 1).", show_default=False),
+        typer.Option(
+            "--newman", metavar="FRONT,BACK", help="Look down a ring bond, e.g. 1,2 (from 1).", show_default=False
+        ),
     ] = None,
     ladder: Annotated[
         bool, typer.Option("--ladder", help="Energies and shares; with a range of -T shares against temperature.")
@@ -259,8 +263,7 @@ class _Job:
         from ringstrain.views.drawing.terminal import states_text
 
         return "\n".join(
-            states_text(analysis, result, states, self.look, self.wishes)
-            for result, states in self._chosen(analysis)
+            states_text(analysis, result, states, self.look, self.wishes) for result, states in self._chosen(analysis)
         )
 
     def _chosen(self, analysis: Analysis) -> list[tuple[SystemResult, tuple[State, ...]]]:
@@ -278,9 +281,12 @@ class _Job:
         known = {state.id for result in analysis.ring_systems for state in result.states}
         for id in self.ids:
             if id not in known:
-                raise UsageError(f"There is no state {id}.", f"The states are {', '.join(sorted(known, key=_by_length))}.")
+                raise UsageError(
+                    f"There is no state {id}.", f"The states are {', '.join(sorted(known, key=_by_length))}."
+                )
         picked = [
-            (result, tuple(state for state in result.states if state.id in self.ids)) for result in analysis.ring_systems
+            (result, tuple(state for state in result.states if state.id in self.ids))
+            for result in analysis.ring_systems
         ]
         return [(result, states) for result, states in picked if states]
 
@@ -292,7 +298,9 @@ class _Job:
 
         analysis = answers[0]
         if self.bond is not None:
-            home = next((r for r in analysis.ring_systems if set(self.bond) <= r.system.atom_set), analysis.ring_systems[0])
+            home = next(
+                (r for r in analysis.ring_systems if set(self.bond) <= r.system.atom_set), analysis.ring_systems[0]
+            )
             states = next((s for r, s in self._chosen(analysis) if r is home), home.states[:1])
             scenes = [draw_newman(analysis, home, s, *self.bond, numbers=self.shown[0]) for s in states]
             return side_by_side(scenes, scenes[0].title)

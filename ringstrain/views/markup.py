@@ -43,7 +43,11 @@ def table(head: Sequence[str], rows: Iterable[Sequence[Cell]], *, foot: Sequence
 
 def _cell(cell: Cell) -> str:
     remarks = "".join(f"<small>{clean(r)}</small>" for r in cell.remarks)
-    return f'<td class="rs-n">{clean(cell.text)}{remarks}</td>' if cell.numeric else f"<td>{clean(cell.text)}{remarks}</td>"
+    return (
+        f'<td class="rs-n">{clean(cell.text)}{remarks}</td>'
+        if cell.numeric
+        else f"<td>{clean(cell.text)}{remarks}</td>"
+    )
 
 
 def paragraph(text: str, kind: str = "") -> str:
@@ -67,8 +71,10 @@ def figure(svg: str, lines: Sequence[str] = (), *, wide: bool = False) -> str:
     caption = ""
     if lines:
         first, *rest = lines
-        caption = f"<figcaption><b>{clean(first)}</b>" + "".join(f"<br>{clean(line)}" for line in rest) + "</figcaption>"
-    return f'<figure{" class=rs-wide" if wide else ""}>{svg}{caption}</figure>'
+        caption = (
+            f"<figcaption><b>{clean(first)}</b>" + "".join(f"<br>{clean(line)}" for line in rest) + "</figcaption>"
+        )
+    return f"<figure{' class=rs-wide' if wide else ''}>{svg}{caption}</figure>"
 
 
 def page(title: str, body: str) -> str:
@@ -77,7 +83,7 @@ def page(title: str, body: str) -> str:
         '<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8">\n'
         '<meta name="viewport" content="width=device-width, initial-scale=1">\n'
         "<meta http-equiv=\"Content-Security-Policy\" content=\"default-src 'none'; style-src 'unsafe-inline'; "
-        "img-src data:\">\n"
+        'img-src data:">\n'
         f"<title>{clean(title)}</title>\n<style>{STYLE}\n{style_sheet()}</style></head>\n"
         f'<body><main class="rs-report">\n{body}\n</main></body></html>\n'
     )
@@ -106,13 +112,15 @@ color:var(--text);background:var(--back);font:15px/1.45 system-ui,Helvetica,Aria
 .rs-report .rs-wide svg{max-width:none}
 .rs-report table{border-collapse:collapse;font-size:.9rem;margin:.4em 0}
 .rs-report caption{text-align:left;font-weight:600;padding:.2em 0}
-.rs-report th,.rs-report td{text-align:left;vertical-align:top;padding:.28em .9em .28em 0;border-bottom:1px solid var(--rule)}
+.rs-report th,.rs-report td{text-align:left;vertical-align:top;
+padding:.28em .9em .28em 0;border-bottom:1px solid var(--rule)}
 .rs-report th{font-weight:600;border-bottom:2px solid var(--faint)}
 .rs-report tfoot td{font-weight:600;border-top:2px solid var(--faint)}
 .rs-report .rs-n{white-space:nowrap;font-variant-numeric:tabular-nums}
 .rs-report ol,.rs-report ul{padding-left:1.5em;margin:.3em 0}
 .rs-report li{overflow-wrap:anywhere;margin:.2em 0}
-@media screen and (prefers-color-scheme:dark){.rs-report{--text:#e7ebee;--faint:#9fabb6;--rule:#3a4650;--back:#12181d;--shade:#1a2229}}
+@media screen and (prefers-color-scheme:dark){.rs-report{
+--text:#e7ebee;--faint:#9fabb6;--rule:#3a4650;--back:#12181d;--shade:#1a2229}}
 """
 STYLE = (
     ":root{color-scheme:light dark}body{margin:0;background:#ffffff}"
@@ -120,7 +128,8 @@ STYLE = (
     + _FRAGMENT_STYLE
     + """.rs-report{max-width:62rem;margin:0 auto;padding:18px clamp(12px,4vw,32px) 40px;box-sizing:border-box}
 @page{size:A4;margin:15mm 14mm}
-@media print{.rs-report{padding:0;font-size:10.5pt;max-width:none}.rs-report figure,.rs-report tr,.rs-report li{break-inside:avoid}
+@media print{.rs-report{padding:0;font-size:10.5pt;max-width:none}
+.rs-report figure,.rs-report tr,.rs-report li{break-inside:avoid}
 .rs-report h2,.rs-report h3{break-after:avoid}.rs-report .rs-scroll,.rs-report .rs-wide{overflow:visible}
 .rs-report .rs-wide svg{max-width:100%}.rs-report table{font-size:9pt}}
 """

@@ -88,9 +88,7 @@ def report(
     str
         HTML that needs no network and no script.
     """
-    body = report_body(
-        analysis, sources, look, wishes=wishes, spectrum=spectrum, findings=findings, range_of=range_of
-    )
+    body = report_body(analysis, sources, look, wishes=wishes, spectrum=spectrum, findings=findings, range_of=range_of)
     return page(analysis.structure.name or f"Chairs of {analysis.input}", body)
 
 
@@ -129,17 +127,16 @@ def report_body(
         parts.append(bullets(cited).replace("<ul>", "<ol>").replace("</ul>", "</ol>"))
     parts.append(
         paragraph(
-            f"Energies are ledger totals, \N{PLUS-MINUS SIGN} 95 %; atoms counted from 1; price tables {analysis.tables_revision}. "
-            "Read or measured values, estimates and computed ones are marked in the ledger; a contact without a price is never zero.",
+            f"Energies are ledger totals, \N{PLUS-MINUS SIGN} 95 %; atoms counted from 1; price tables "
+            f"{analysis.tables_revision}. Read, estimated and computed values are marked in the ledger; a contact "
+            "without a price is never zero.",
             "faint",
         )
     )
     return "\n".join(parts)
 
 
-def _system(
-    analysis: Analysis, result: SystemResult, marks: References, look: Look, wishes: Wishes
-) -> list[str]:
+def _system(analysis: Analysis, result: SystemResult, marks: References, look: Look, wishes: Wishes) -> list[str]:
     """Everything about one ring system."""
     shown = shown_states(result)
     scenes = [draw_state(result, state, wishes) for state in shown]
@@ -208,7 +205,9 @@ def _ledger(result: SystemResult, marks: References, look: Look) -> str:
         price = look.energy(line.value_kcal)
         cells += [Cell(f"{count:.3g} {times} {price}" if count else "\N{EN DASH}", True) for count in row.counts]
         if compared:
-            cells.append(Cell("?" if row.difference_kcal is None else look.energy(row.difference_kcal, signed=True), True))
+            cells.append(
+                Cell("?" if row.difference_kcal is None else look.energy(row.difference_kcal, signed=True), True)
+            )
         cells.append(Cell(look.energy(row.spread_kcal), True))
         cells.append(Cell("; ".join(_atoms(atoms) for atoms in line.atoms)))
         cells.append(Cell(known_words(line, marks)))
@@ -250,7 +249,11 @@ def _nmr(spectrum: Spectrum) -> list[str]:
     for signal in spectrum.signals:
         couplings = [
             f"{c.label} {'?' if c.average_Hz is None else f'{c.average_Hz:.1f}'}"
-            + (f" \N{PLUS-MINUS SIGN} {Z95 * c.uncertainty_Hz:.1f}" if c.average_Hz is not None and c.uncertainty_Hz else "")
+            + (
+                f" \N{PLUS-MINUS SIGN} {Z95 * c.uncertainty_Hz:.1f}"
+                if c.average_Hz is not None and c.uncertainty_Hz
+                else ""
+            )
             for c in signal.couplings
             if c.observable
         ]

@@ -57,7 +57,11 @@ class View:
         c, s = math.cos(angle), math.sin(angle)
         right, back = c * x - s * y, s * x + c * y
         slant = -SLANT if self.mirrored else SLANT
-        return right, z * math.cos(self.eye) + back * math.sin(self.eye) - slant * right, -back * math.cos(self.eye) + z * math.sin(self.eye)
+        return (
+            right,
+            z * math.cos(self.eye) + back * math.sin(self.eye) - slant * right,
+            -back * math.cos(self.eye) + z * math.sin(self.eye),
+        )
 
     def place_at(self, position: int) -> int:
         """Place of the reference ring that stands at sixth ``position`` (0 right tip, 1 back right, anticlockwise)."""
@@ -103,7 +107,7 @@ def choose_view(shapes: Shapes, model: Model) -> tuple[int, bool]:
     """Sixths of a turn and side from which a system is drawn, the same for all its states.
 
     A lone ring: atoms numbered clockwise; the oxygen of an oxane at the back right with its anomeric carbon at the
-    right tip; else the first substituted atom at the right tip; a flat bond at the front.  Several rings: as wide and
+    right tip; else the first substituted atom at the right tip, an exocyclic double bond before others; a flat bond at the front.  Several rings: as wide and
     clear as possible, axial groups up rather than down, the first ring at the left.
     """
     system = shapes.geometry.system
@@ -141,10 +145,22 @@ def _lone(shapes: Shapes, structure: Structure) -> tuple[int, bool]:
         if len(anomeric) == 1:
             forward = anomeric[0] == (o + 1) % 6
         return _steps_for(o, 1, forward), forward
+    # An exocyclic double bond reads best at a tip: elsewhere it points at the reader or into the ring.
+    doubles = [
+        a for a in sorted(atoms) if any(_is_double(structure, a, n) for n in structure.neighbours[a] if n not in atoms)
+    ]
+    if doubles:
+        return _steps_for(atoms.index(doubles[0]), 0, forward), forward
     bearing = [
-        a for a in sorted(atoms) if any(n not in atoms and structure.atoms[n].number != 1 for n in structure.neighbours[a])
+        a
+        for a in sorted(atoms)
+        if any(n not in atoms and structure.atoms[n].number != 1 for n in structure.neighbours[a])
     ]
     return _steps_for(atoms.index(bearing[0]) if bearing else start, 0, forward), forward
+
+
+def _is_double(structure: Structure, a: int, n: int) -> bool:
+    return structure.bond(a, n).order == 2 and structure.atoms[a].number == 6
 
 
 def _steps_for(place: int, position: int, over: bool) -> int:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import math
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from ringstrain.analysis import Analysis, State, SystemResult
@@ -111,7 +112,9 @@ def draw_ladder(rungs: Sequence[Rung], look: Look, *, title: str, foot: str = ""
     for place, rung in enumerate(rungs):
         y = top + 12.0 + _ROW * 1.35 * place
         items.append(Label(_MARGIN, y + 4.5, ((rung.name, ""),), "ink", 14.0, "start", True))
-        items.append(Label(left, y + 22.0, ((_cut(rung.words, bar_left + bar - left), ""),), "muted", _SMALL, kind="mark"))
+        items.append(
+            Label(left, y + 22.0, ((_cut(rung.words, bar_left + bar - left), ""),), "muted", _SMALL, kind="mark")
+        )
         items += _energy(rung, y, across, look, left + plot)
         items += _share(rung, y, bar_left, bar)
     end = bottom + 22.0
@@ -143,9 +146,8 @@ def _ticks(low: float, high: float, look: Look) -> list[tuple[float, str]]:
     return [(i * step / factor, f"{i * step:.{digits}f}".replace("-", "\N{MINUS SIGN}")) for i in places]
 
 
-def _energy(rung: Rung, y: float, across: object, look: Look, right: float) -> list[Item]:
+def _energy(rung: Rung, y: float, across: Callable[[float], float], look: Look, right: float) -> list[Item]:
     """A dot with its interval and value; an open dot when only a lower limit is known."""
-    assert callable(across)
     if rung.energy_kcal is None:
         return [Label(right + 8.0, y + 4.0, (("not determined", ""),), "muted", _SMALL)]
     x = across(rung.energy_kcal)
@@ -186,7 +188,9 @@ def draw_equilibrium(analysis: Analysis, result: SystemResult, states: Sequence[
     foot = "One ring form only: no K."
     if e is not None:
         ratio = f"[{e.favoured}]/[{e.other}]"
-        foot = f"K = {ratio}: {e.bound}" if e.K is None else f"K = {ratio} = {e.bound} {constant(e.K)}".replace("  ", " ")
+        foot = (
+            f"K = {ratio}: {e.bound}" if e.K is None else f"K = {ratio} = {e.bound} {constant(e.K)}".replace("  ", " ")
+        )
         if e.K is not None and e.K_low is not None and e.K_high is not None and e.uncertainty_kcal:
             foot += f" ({constant(e.K_low)} to {constant(e.K_high)})"
         foot += f"; 95 % limits, {kelvin(analysis.temperature_K)}, {analysis.medium}"
@@ -229,8 +233,9 @@ def draw_temperatures(answers: Sequence[Analysis], place: int, look: Look) -> Sc
         items.append(Stroke((at(low, share), at(high, share)), "rule", 1.0))
         x, y = at(low, share)
         items.append(Label(x - 8.0, y + 4.0, ((f"{100 * share:.0f} %", ""),), "muted", _SMALL, "end"))
-    for i in range(5):
-        temperature = low + (high - low) * i / 4.0
+    step = next(s for s in (1.0, 2.0, 5.0, 10.0, 20.0, 25.0, 50.0, 100.0, 200.0, 500.0) if (high - low) / s <= 6)
+    for i in range(math.ceil(low / step), math.floor(high / step) + 1):
+        temperature = step * i
         x, y = at(temperature, 0.0)
         items.append(Stroke(((x, y), (x, y + 5.0)), "muted", 1.0))
         items.append(Label(x, y + 18.0, ((f"{temperature:.0f}", ""),), "muted", _SMALL, "middle"))

@@ -110,12 +110,11 @@ def _ring_spoke(geometry: Geometry, atom: int, angle: float) -> Spoke:
 def _site_spoke(result: SystemResult, state: State, site: Site, angle: float) -> Spoke:
     geometry = state.detail.shapes.geometry
     occupant = occupant_of(geometry.structure, site)
-    position = next((p.position for p in state.detail.facts.placed if p.site == site), "equatorial")
+    position: Role = next((p.position for p in state.detail.facts.placed if p.site == site), "equatorial")
     if site.neighbour in geometry.system.atom_set:
         return _ring_spoke(geometry, int(site.neighbour), angle)
     if site.neighbour < 0:
-        pieces = ("H",) if occupant == "hydrogen" else ("lp",)
-        return Spoke(int(site.neighbour), angle, pieces, "hydrogen", False)
+        return Spoke(int(site.neighbour), angle, ("H" if occupant == "hydrogen" else "lp",), "hydrogen", False)
     pieces = pieces_of(result, geometry.structure, int(site.ring_atom), int(site.neighbour))
     return Spoke(int(site.neighbour), angle, pieces, position, occupant == "atom")
 
@@ -161,7 +160,15 @@ def draw_newman(
     left = (box[0] + box[2] - wide) / 2
     for place, (line, bold) in enumerate(lines):
         items.append(
-            Label(left + wide / 2, box[3] + 24.0 + 16.0 * place, ((line, ""),), "ink" if bold else "muted", 12.5, "middle", bold)
+            Label(
+                left + wide / 2,
+                box[3] + 24.0 + 16.0 * place,
+                ((line, ""),),
+                "ink" if bold else "muted",
+                12.5,
+                "middle",
+                bold,
+            )
         )
     low = bounds(items)[3]
     return Scene(
@@ -179,7 +186,15 @@ def dihedral_lines(front: tuple[Spoke, ...], back: tuple[Spoke, ...]) -> tuple[s
         for b in back:
             if a.heavy and b.heavy:
                 angle = wrap(b.angle - a.angle)
-                word = " gauche" if is_gauche(angle) else " eclipsed" if abs(angle) < 30 else " anti" if abs(angle) > 142 else ""
+                word = (
+                    " gauche"
+                    if is_gauche(angle)
+                    else " eclipsed"
+                    if abs(angle) < 30
+                    else " anti"
+                    if abs(angle) > 142
+                    else ""
+                )
                 first, second = (_name(s) for s in (a, b))
                 sign = "\N{MINUS SIGN}" if angle < -0.5 else ""
                 lines.append(f"{first}/{second} {sign}{abs(angle):.0f}\N{DEGREE SIGN}{word}")

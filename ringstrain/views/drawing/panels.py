@@ -6,8 +6,9 @@ from collections.abc import Sequence
 
 from ringstrain.analysis import Analysis, State, SystemResult
 from ringstrain.units import Z95
+from ringstrain.views.drawing.marks import CLASH_DASH, ISOCLINAL_DASH
 from ringstrain.views.drawing.scene import Item, Label, Role, Scene, Stroke, bounds, moved, runs_width
-from ringstrain.views.drawing.states import CLASH_DASH, ISOCLINAL_DASH, Wishes, draw_state
+from ringstrain.views.drawing.states import Wishes, draw_state
 from ringstrain.views.forms import form_name
 from ringstrain.views.look import Look, constant, kelvin, percent, percent_range
 
@@ -73,7 +74,9 @@ def draw_system(
         for number, line in enumerate(lines):
             at = _MARGIN + baseline + 18.0 + _LINE * number
             items.append(
-                Label(x + wide / 2, at, ((line, ""),), "ink" if number < 3 else "muted", _CAPTION, "middle", number == 0)
+                Label(
+                    x + wide / 2, at, ((line, ""),), "ink" if number < 3 else "muted", _CAPTION, "middle", number == 0
+                )
             )
         x += wide
     bottom = bounds(items)[3] + 12.0

@@ -13,10 +13,8 @@ from ringstrain.views.drawing.space import (
     add,
     axis_of,
     carried,
-    cross,
     dot,
     fit,
-    mean,
     minus,
     outward,
     ring_points,
@@ -113,7 +111,9 @@ class _Builder:
         self._take(first, ring_points(self.shapes.rings[first].torsions))
         left = [number for number in range(len(rings)) if number != first]
         while left:
-            number = max(left, key=lambda n: (sum(2 * (a in self.positions) + (a in self.expected) for a in rings[n].atoms), -n))
+            number = max(
+                left, key=lambda n: (sum(2 * (a in self.positions) + (a in self.expected) for a in rings[n].atoms), -n)
+            )
             left.remove(number)
             template = ring_points(self.shapes.rings[number].torsions)
             atoms = rings[number].atoms
@@ -188,7 +188,8 @@ class _Builder:
         goal_places = [i for i, atom in enumerate(ring) if atom in self.positions or atom in self.expected]
         radius = 0.5 / math.sin(math.pi / size)
         polygon: list[Vector] = [
-            (radius * math.cos(2 * math.pi * i / size), radius * math.sin(2 * math.pi * i / size), 0.0) for i in range(size)
+            (radius * math.cos(2 * math.pi * i / size), radius * math.sin(2 * math.pi * i / size), 0.0)
+            for i in range(size)
         ]
         goal = [self.positions.get(ring[i]) or self.expected[ring[i]] for i in goal_places]
         weights = [5.0 if ring[i] in self.positions else 1.0 for i in goal_places]
@@ -290,18 +291,3 @@ def _ease(points: list[Vector], free: list[int], span: float, rounds: int) -> No
                 points[i] = add(points[i], times(2.0, shift))
             else:
                 points[j] = minus(points[j], times(2.0, shift))
-
-
-def ring_centre(model: Model, ring: Sequence[int]) -> Vector:
-    """Middle of a ring."""
-    return mean([model.positions[a] for a in ring])
-
-
-def turned_over(direction: Vector) -> Vector:
-    """A vector after the model is turned over about its x axis."""
-    return direction[0], -direction[1], -direction[2]
-
-
-def facing(first: Vector, second: Vector) -> Vector:
-    """Unit vector across two others."""
-    return unit(cross(first, second))

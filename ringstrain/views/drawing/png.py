@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
 from typing import Any
 
 from ringstrain.errors import OutOfScope
@@ -71,7 +72,7 @@ class _Painter:
     def _line(self, points: tuple[tuple[float, float], ...], role: str, width: float) -> None:
         self.canvas.SetColour(_colour(role))
         self.canvas.SetLineWidth(max(1, round(width * self.scale)))
-        for first, second in zip(points, points[1:]):
+        for first, second in pairwise(points):
             self.canvas.DrawLine(self._at(*first), self._at(*second), True)
 
     def stroke(self, item: Stroke) -> None:
@@ -150,7 +151,7 @@ def _dashed(points: tuple[tuple[float, float], ...], dash: tuple[float, ...]) ->
     pieces: list[tuple[tuple[float, float], ...]] = []
     number, left, pen = 0, dash[0], True
     current: list[tuple[float, float]] = [points[0]]
-    for (x0, y0), (x1, y1) in zip(points, points[1:]):
+    for (x0, y0), (x1, y1) in pairwise(points):
         length = ((x1 - x0) ** 2 + (y1 - y0) ** 2) ** 0.5
         done = 0.0
         while length - done > left:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from functools import lru_cache
+from itertools import pairwise
 from typing import Any
 
 Vector = tuple[float, float, float]
@@ -95,7 +96,7 @@ def ring_points(torsions: tuple[float, ...]) -> tuple[Vector, ...]:
     torsions
         Endocyclic torsions by bond [degree].
     """
-    alternate = all(abs(a + b) < 1.0 for a, b in zip(torsions, torsions[1:])) and abs(torsions[0]) > 30.0
+    alternate = all(abs(a + b) < 1.0 for a, b in pairwise(torsions)) and abs(torsions[0]) > 30.0
     if alternate:
         lift = _HALF_HEIGHT if torsions[0] > 0 else -_HALF_HEIGHT
         return tuple(
@@ -135,8 +136,8 @@ def _relaxed(torsions: tuple[float, ...]) -> tuple[Vector, ...]:
         flat = flat - np.linalg.solve(slopes.T @ slopes + 1e-3 * np.eye(18), slopes.T @ here)
     points = flat.reshape(6, 3)
     points = points - points.mean(axis=0)
-    rows = [tuple(float(x) for x in row) for row in points]
-    z = np.array(axis_of(rows))  # type: ignore[arg-type]  # rows of three
+    rows: list[Vector] = [(float(a), float(b), float(c)) for a, b, c in points]
+    z: Any = np.array(axis_of(rows))
     x = points[0] - np.dot(points[0], z) * z
     x = x / np.linalg.norm(x)
     turned = points @ np.stack((x, np.cross(z, x), z), axis=1)

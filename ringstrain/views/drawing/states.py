@@ -6,10 +6,12 @@ import math
 from dataclasses import dataclass
 
 from ringstrain.analysis import State, SystemResult
+from ringstrain.contacts import ContactKind
 from ringstrain.views.drawing.camera import View, choose_view, settle
 from ringstrain.views.drawing.labels import pieces_of
+from ringstrain.views.drawing.marks import ISOCLINAL_DASH, bow, clash, inside, shifted, shortened
 from ringstrain.views.drawing.placing import Arm, Model, place
-from ringstrain.views.drawing.scene import Item, Label, Role, Scene, Stroke, bounds, moved
+from ringstrain.views.drawing.scene import Item, Label, Role, Run, Scene, Stroke, bounds, moved
 from ringstrain.views.drawing.writing import Board, Point, Written, write_group, write_number
 
 #: Length of a bond and size of a label [px].
@@ -18,8 +20,7 @@ _HYDROGEN_SIZE, _NUMBER_SIZE, _MARGIN = 12.5, 10.5, 10.0
 #: Bonds to groups against ring bonds, axial and other ones, and to hydrogens [-].
 _AXIAL_REACH, _REACH, _HYDROGEN_REACH = 0.86, 0.95, 0.62
 _WIDTHS: dict[str, float] = {"axial": 3.4, "equatorial": 1.7, "isoclinal": 2.2, "hydrogen": 1.1}
-ISOCLINAL_DASH = (6.0, 3.0)
-CLASH_DASH = (1.5, 3.0)
+_CLASHES: tuple[ContactKind, ...] = ("syn-axial X//H", "syn-axial X//Y", "peri")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -165,7 +166,7 @@ class _Drawing:
         self.bonds.append((depth, Stroke((start_cut, end_cut), "ink", width, (), True)))
         bond = self.structure.bond(a, b)
         if bond.order == 2:
-            self.bonds.append((depth, Stroke(_inside(start_cut, end_cut, middle), "ink", 1.8)))
+            self.bonds.append((depth, Stroke(inside(start_cut, end_cut, middle), "ink", 1.8)))
 
     def _cut(self, atom: int, here: Point, there: Point) -> Point:
         """Start of a bond, short of a written atom."""
@@ -181,8 +182,8 @@ class _Drawing:
             if not pieces:
                 continue
             x, y = self.point(atom)
-            runs = tuple((p, "sup" if p in ("+", "\N{MINUS SIGN}") else "") for p in pieces)
-            label = Label(x - 0.36 * SIZE, y + 0.36 * SIZE, runs, "ink", SIZE, "start", False, "atom")  # type: ignore[arg-type]  # literal scripts
+            runs: tuple[Run, ...] = tuple((p, "sup" if p in ("+", "\N{MINUS SIGN}") else "") for p in pieces)
+            label = Label(x - 0.36 * SIZE, y + 0.36 * SIZE, runs, "ink", SIZE, "start", False, "atom")
             self.board.boxes.append(label.box)
             self.top.append(label)
 
@@ -214,9 +215,7 @@ class _Drawing:
             if neighbour < 0 and item.position == "axial":
                 axial[root, item.site.ring] = neighbour
             if neighbour < 0 and (
-                self.wishes.hydrogens
-                or self._ring_degree(root) > 2
-                or system.kinds[root] == "inverting"
+                self.wishes.hydrogens or self._ring_degree(root) > 2 or system.kinds[root] == "inverting"
             ):
                 shown.add((root, neighbour))
         if self.wishes.clashes:
@@ -273,7 +272,7 @@ class _Drawing:
         dash = ISOCLINAL_DASH if role == "isoclinal" else ()
         if double:
             for side in (-1.0, 1.0):
-                self.bonds.append((depth, Stroke(_shifted(start, written.tip, 2.2 * side), role, 1.7)))
+                self.bonds.append((depth, Stroke(shifted(start, written.tip, 2.2 * side), role, 1.7)))
         else:
             self.bonds.append((depth, Stroke((start, written.tip), role, width, dash, True)))
 
@@ -316,16 +315,19 @@ class _Drawing:
         marks: list[Item] = []
         facts = self.state.detail.facts
         if self.wishes.clashes:
-            for kind in ("syn-axial X//H", "syn-axial X//Y", "peri"):
-                for contact in facts.of_kind(kind):  # type: ignore[arg-type]  # literal kinds
+            for kind in _CLASHES:
+                for contact in facts.of_kind(kind):
                     if kind == "syn-axial X//H" and max(contact.atoms[0], contact.atoms[-1]) in self.flat:
                         continue
                     ends = self._contact_ends(contact.atoms)
                     if ends:
-                        marks += _clash(*ends, strong=kind != "syn-axial X//H")
+                        marks += clash(*ends, strong=kind != "syn-axial X//H")
         if self.wishes.gauche:
             for contact in facts.of_kind("gauche"):
-                first, last = self._spot(contact.atoms[1], contact.atoms[0]), self._spot(contact.atoms[2], contact.atoms[3])
+                first, last = (
+                    self._spot(contact.atoms[1], contact.atoms[0]),
+                    self._spot(contact.atoms[2], contact.atoms[3]),
+                )
                 if first and last and contact.atoms[0] not in self.flat and contact.atoms[3] not in self.flat:
                     marks += self._gauche(first, last)
         return marks
@@ -352,86 +354,13 @@ class _Drawing:
 
     def _gauche(self, first: Point, last: Point) -> list[Item]:
         """A dashed bow between two groups with a small g beside it."""
-        a, b = _shortened(first, last, 11.0)
-        bow = _bow(a, b, 0.14)
-        middle = bow[len(bow) // 2]
-        items: list[Item] = [Stroke(bow, "accent", 1.3, (5.0, 3.0))]
-        label = Label(middle[0], middle[1] - 3.0, (("g", ""),), "accent", 11.0, "middle", False, "mark")
+        a, b = shortened(first, last, 11.0)
+        arc = bow(a, b, 0.14)
+        middle = arc[len(arc) // 2]
+        items: list[Item] = [Stroke(arc, "accent", 1.3, (5.0, 3.0))]
         for shift in (0.0, -9.0, 9.0, -18.0, 18.0, -27.0, 27.0):
             tried = Label(middle[0], middle[1] - 3.0 + shift, (("g", ""),), "accent", 11.0, "middle", False, "mark")
             if self.board.cost(tried.box) < 1000.0:
                 self.board.boxes.append(tried.box)
                 return [*items, tried]
-        del label
         return items
-
-
-def _inside(start: Point, end: Point, middle: Point) -> tuple[Point, Point]:
-    """The second line of a double bond, on the side of the ring and a little shorter."""
-    dx, dy = end[0] - start[0], end[1] - start[1]
-    length = math.hypot(dx, dy) or 1.0
-    normal = -dy / length, dx / length
-    side = 1.0 if (middle[0] - start[0]) * normal[0] + (middle[1] - start[1]) * normal[1] > 0 else -1.0
-    shift = 4.6 * side
-    return (
-        (start[0] + shift * normal[0] + 0.1 * dx, start[1] + shift * normal[1] + 0.1 * dy),
-        (end[0] + shift * normal[0] - 0.1 * dx, end[1] + shift * normal[1] - 0.1 * dy),
-    )
-
-
-def _shifted(start: Point, end: Point, by: float) -> tuple[Point, Point]:
-    dx, dy = end[0] - start[0], end[1] - start[1]
-    length = math.hypot(dx, dy) or 1.0
-    x, y = -by * dy / length, by * dx / length
-    return (start[0] + x, start[1] + y), (end[0] + x, end[1] + y)
-
-
-def _shortened(a: Point, b: Point, by: float) -> tuple[Point, Point]:
-    dx, dy = b[0] - a[0], b[1] - a[1]
-    length = math.hypot(dx, dy) or 1.0
-    by = min(by, 0.35 * length)
-    return (a[0] + by * dx / length, a[1] + by * dy / length), (b[0] - by * dx / length, b[1] - by * dy / length)
-
-
-def _bow(a: Point, b: Point, depth: float) -> tuple[Point, ...]:
-    """A flat arc between two points."""
-    dx, dy = b[0] - a[0], b[1] - a[1]
-    points = []
-    for i in range(9):
-        t = i / 8.0
-        lift = 4.0 * depth * t * (1.0 - t)
-        points.append((a[0] + t * dx + lift * dy, a[1] + t * dy - lift * dx))
-    return tuple(points)
-
-
-def _clash(first: Written | Point, last: Written | Point, *, strong: bool) -> list[Item]:
-    """A dotted line between two partners that meet; two heavy groups also get a saw-tooth across its middle."""
-    a, b = (_middle_of(end) for end in (first, last))
-    a, b = _edge(a, b, first), _edge(b, a, last)
-    items: list[Item] = [Stroke((a, b), "clash", 2.2 if strong else 1.5, CLASH_DASH)]
-    if strong:
-        x, y = (a[0] + b[0]) / 2, (a[1] + b[1]) / 2
-        items.append(Stroke(((x - 4, y + 6), (x + 2.5, y + 1), (x - 2.5, y - 1), (x + 4, y - 6)), "clash", 2.2))
-    return items
-
-
-def _middle_of(end: Written | Point) -> Point:
-    if isinstance(end, Written):
-        box = end.label.box
-        return (box[0] + box[2]) / 2, (box[1] + box[3]) / 2
-    return end
-
-
-def _edge(a: Point, b: Point, end: Written | Point) -> Point:
-    """Where the line from a to b leaves the label at a."""
-    if not isinstance(end, Written):
-        return _shortened(a, b, 4.0)[0]
-    box = end.label.box
-    dx, dy = b[0] - a[0], b[1] - a[1]
-    reach = 1.0
-    if dx:
-        reach = min(reach, ((box[2] - box[0]) / 2 + 2.0) / abs(dx))
-    if dy:
-        reach = min(reach, ((box[3] - box[1]) / 2 + 2.0) / abs(dy))
-    reach = min(reach, 0.45)
-    return a[0] + reach * dx, a[1] + reach * dy

@@ -53,7 +53,8 @@ def style_sheet() -> str:
 
 def _rules(tone: int) -> str:
     return "".join(
-        f".rs-s-{role}{{stroke:{colours[tone]}}}.rs-f-{role}{{fill:{colours[tone]}}}" for role, colours in COLOURS.items()
+        f".rs-s-{role}{{stroke:{colours[tone]}}}.rs-f-{role}{{fill:{colours[tone]}}}"
+        for role, colours in COLOURS.items()
     )
 
 
@@ -76,13 +77,11 @@ def _stroke(item: Stroke) -> Iterable[str]:
     body = f'<polyline points="{_points(item.points)}" fill="none"'
     if item.casing:
         yield (
-            f'<polyline points="{_points(cleared(item))}" fill="none" class="rs-s-paper" stroke="{COLOURS["paper"][0]}" '
-            f'stroke-width="{_n(item.width + 5)}" stroke-linecap="butt"/>'
+            f'<polyline points="{_points(cleared(item))}" fill="none" class="rs-s-paper" stroke-linecap="butt" '
+            f'stroke="{COLOURS["paper"][0]}" stroke-width="{_n(item.width + 5)}"/>'
         )
     dash = f' stroke-dasharray="{" ".join(_n(d) for d in item.dash)}"' if item.dash else ""
-    yield (
-        f'{body} class="rs-s-{item.role}" stroke="{COLOURS[item.role][0]}" stroke-width="{_n(item.width)}"{dash}/>'
-    )
+    yield (f'{body} class="rs-s-{item.role}" stroke="{COLOURS[item.role][0]}" stroke-width="{_n(item.width)}"{dash}/>')
     if item.arrow:
         yield (
             f'<polygon points="{_points(arrow_head(item))}" class="rs-f-{item.role}" fill="{COLOURS[item.role][0]}"/>'
@@ -129,9 +128,10 @@ def _label(item: Label) -> str:
     if item.kind != "caption":
         halo = f' paint-order="stroke" stroke="{COLOURS["paper"][0]}" stroke-width="3.5"'
     anchor = f' text-anchor="{item.anchor}"' if item.anchor != "start" else ""
+    names = f"rs-f-{item.role}{' rs-s-paper' if halo else ''} rs-{item.kind}"
     return (
-        f'<text x="{_n(item.x)}" y="{_n(item.y)}" font-size="{_n(item.size)}"{anchor}{weight}{halo} class="rs-f-{item.role} '
-        f'{"rs-s-paper " if halo else ""}rs-{item.kind}" fill="{COLOURS[item.role][0]}">{"".join(spans)}</text>'
+        f'<text x="{_n(item.x)}" y="{_n(item.y)}" font-size="{_n(item.size)}"{anchor}{weight}{halo} class="{names}" '
+        f'fill="{COLOURS[item.role][0]}">{"".join(spans)}</text>'
     )
 
 

@@ -165,11 +165,19 @@ class _Canvas:
     def label(self, item: Label) -> None:
         """Text in the cells it falls on; an atom number gives way to everything else."""
         words = " ".join(
-            part for part in ("".join(t for t, s in item.runs if (s == "number") == apart) for apart in self._order(item)) if part
+            part
+            for part in ("".join(t for t, s in item.runs if (s == "number") == apart) for apart in self._order(item))
+            if part
         )
         text = self.look.say(words)
         x, y = item.x / self.per_column, int((item.y - 0.3 * item.size) / self.per_row)
-        start = round(x - 0.3) if item.anchor == "start" else round(x - len(text)) if item.anchor == "end" else round(x - len(text) / 2)
+        start = (
+            round(x - 0.3)
+            if item.anchor == "start"
+            else round(x - len(text))
+            if item.anchor == "end"
+            else round(x - len(text) / 2)
+        )
         start = max(0, min(start, self.columns - len(text)))
         cells = [(start + i, y) for i in range(len(text))]
         if item.kind in ("number", "mark"):

@@ -14,6 +14,9 @@ Point = tuple[float, float]
 STRETCHES = (1.0, 1.2, 1.45, 1.75, 2.1, 2.5, 3.0, 3.6)
 #: Clear space around a label [px].
 CLEARANCE = 2.5
+#: What writing on another label costs, against at most a few hundred for anything else [-].
+LABEL_COST = 1000.0
+_Form = tuple[bool, tuple[Run, ...], float]
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,12 +44,12 @@ class Board:
     segments: list[tuple[Point, Point]] = field(default_factory=list)
 
     def cost(self, box: Box, root: Point | None = None, tip: Point | None = None) -> float:
-        """How badly a label here would collide: labels count most, then bonds through it, then its bond through labels."""
+        """How badly a label here would collide: with labels, its bond with labels, bonds with it."""
         total = 0.0
         for other in self.boxes:
             shared = overlap(box, other, CLEARANCE)
             if shared:
-                total += 1000.0 + shared
+                total += LABEL_COST + shared
         for start, end in self.segments:
             if start != root and end != root and crosses(box, start, end):
                 total += 60.0
@@ -92,11 +95,38 @@ def write_group(
     kind
         Sort of label.
     """
-    best: tuple[float, Written] | None = None
     turns = (False, True) if way[0] >= -1.0 else (True, False)
     forms = [_form(pieces, turned, number, size) for turned in turns]
     if len(pieces) == 1 and not number:
         forms = [form for form in forms if not form[0]]
+    best = _best_place(board, root, way, forms, (size, role, bold, kind))
+    if best[0] >= LABEL_COST:
+        # Nothing free along the bond: leave its direction a little rather than write on another label.
+        turned_ways = [_rotated(way, sign * angle) for angle in (0.25, 0.5, 0.75, 1.0, 1.4, 1.9) for sign in (1, -1)]
+        best = min(
+            [best, *(_best_place(board, root, w, forms, (size, role, bold, kind)) for w in turned_ways)], key=_cost
+        )
+    written = best[1]
+    board.boxes.append(written.label.box)
+    board.segments.append((root, written.tip))
+    return written
+
+
+def _cost(found: tuple[float, Written]) -> float:
+    return found[0]
+
+
+def _rotated(way: Point, angle: float) -> Point:
+    c, s = math.cos(angle), math.sin(angle)
+    return c * way[0] - s * way[1], s * way[0] + c * way[1]
+
+
+def _best_place(
+    board: Board, root: Point, way: Point, forms: list[_Form], look: tuple[float, Role, bool, str]
+) -> tuple[float, Written]:
+    """The cheapest place along a direction, near ones first, with its cost."""
+    size, role, bold, kind = look
+    best: tuple[float, Written] | None = None
     for rank, stretch in enumerate(STRETCHES):
         tip = root[0] + stretch * way[0], root[1] + stretch * way[1]
         for order, (turned, runs, atom_width) in enumerate(forms):
@@ -110,13 +140,10 @@ def write_group(
         if best is not None and best[0] < 9.0 * (rank + 1):
             break
     assert best is not None
-    written = best[1]
-    board.boxes.append(written.label.box)
-    board.segments.append((root, written.tip))
-    return written
+    return best
 
 
-def _form(pieces: tuple[str, ...], turned: bool, number: str, size: float) -> tuple[bool, tuple[Run, ...], float]:
+def _form(pieces: tuple[str, ...], turned: bool, number: str, size: float) -> _Form:
     """Whether a label reads towards its bond, its runs, and the width of the glyph that the bond points at."""
     runs = runs_of(pieces, turned=turned)
     atom_width = runs_width(runs_of(pieces[:1]), size)
