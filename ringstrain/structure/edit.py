@@ -166,6 +166,8 @@ class Draft:
         head = self._atoms[shift]
         if head.charge < 0:
             head = replace(head, charge=head.charge + 1)
+        elif head.radicals:
+            head = replace(head, radicals=head.radicals - 1)
         elif head.hydrogens:
             head = replace(head, hydrogens=head.hydrogens - 1)
         else:
@@ -195,6 +197,11 @@ class Draft:
             return
         order = [new if n == old else int(n) for n in own.neighbours]
         self.configure(atom, (order[0], order[1], order[2], order[3]), clockwise=own.clockwise)
+
+    def numbering(self) -> dict[int, int]:
+        """New number of each atom that is left, as :meth:`structure` without ``keep`` gives it."""
+        alive = [i for i in range(len(self._atoms)) if i not in self._gone]
+        return {old: new for new, old in enumerate(alive)}
 
     def structure(self, keep: int | None = None) -> Structure:
         """The changed structure, renumbered, with idle centres cleared.
@@ -242,7 +249,8 @@ class Draft:
         configurations = []
         for old in alive:
             own = self._configurations[old]
-            if own is not None and all(n < 0 or (n in index and n in self._around[old]) for n in own.neighbours):
+            named = {int(n) for n in own.neighbours if n >= 0} if own is not None else set()
+            if own is not None and named == {n for n in self._around[old] if n in index}:
                 moved = tuple(IMPLICIT if n < 0 else AtomIndex(index[n]) for n in own.neighbours)
                 configurations.append(Configuration(moved, own.clockwise))
             else:

@@ -1,0 +1,144 @@
+"""Everything a structure does, class by class, and the reactivity document."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+from ringstrain.analysis import SCHEMA, Analysis
+from ringstrain.consequences.answer import CLASSES, check_class, find
+from ringstrain.consequences.finding import Finding, Verdict
+from ringstrain.consequences.reduction import REAGENTS as KETONE_REAGENTS
+from ringstrain.consequences.request import Request
+from ringstrain.consequences.scene import scenes
+from ringstrain.errors import MissingValue
+from ringstrain.tables.records import Tables
+
+_ORDER: tuple[Verdict, ...] = ("open", "needs the flip", "needs a boat", "locked out")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Reactivity:
+    """Findings of a structure.
+
+    Attributes
+    ----------
+    analysis
+        States and prices behind it.
+    reaction
+        Class that was asked for, empty for the overview.
+    findings
+        Class by class, the largest share first.
+    alternatives
+        The same question with other reagent classes, for the classes where the reagent turns the outcome.
+    notes
+        What the reader should know.
+    """
+
+    analysis: Analysis
+    reaction: str
+    findings: tuple[Finding, ...]
+    alternatives: tuple[Finding, ...] = ()
+    notes: tuple[str, ...] = ()
+
+    def as_dict(self) -> dict[str, Any]:
+        """The reactivity document, ready for JSON."""
+        from ringstrain import __version__
+
+        return {
+            "schema": SCHEMA,
+            "kind": "reactivity",
+            "version": __version__,
+            "input": self.analysis.input,
+            "smiles": self.analysis.smiles,
+            "temperature_K": self.analysis.temperature_K,
+            "medium": self.analysis.medium,
+            "reaction": self.reaction or None,
+            "findings": [finding.as_dict() for finding in self.findings],
+            "alternatives": [finding.as_dict() for finding in self.alternatives],
+            "notes": list(self.notes),
+        }
+
+
+def react(
+    analysis: Analysis, reaction: str = "", request: Request | None = None, tables: Tables | None = None
+) -> Reactivity:
+    """What a structure does, in one class of reaction or in all.
+
+    Parameters
+    ----------
+    analysis
+        A priced structure; never changed.
+    reaction
+        Class of reaction; empty for all.
+    request
+        Reagents; the usual ones when None.
+    tables
+        Price tables for epimers and products; those of the package when None.
+
+    Returns
+    -------
+    Reactivity
+        Findings class by class.
+
+    Raises
+    ------
+    UsageError
+        If the class or a reagent is unknown.
+
+    Examples
+    --------
+    >>> from ringstrain import analyze
+    >>> [f.verdict for f in react(analyze("C[C@H]1CCCC[C@@H]1Br"), "e2").findings]
+    ['needs the flip']
+    """
+    asked = request or Request()
+    notes = _notes(analysis)
+    if reaction:
+        name = check_class(reaction)
+        alternatives: tuple[Finding, ...] = ()
+        if name == "reduction" and not asked.reagent and not asked.nucleophile:
+            alternatives = tuple(
+                finding
+                for reagent in KETONE_REAGENTS[1:]
+                for finding in find(analysis, name, Request(reagent=reagent), tables)
+            )
+        return Reactivity(
+            analysis=analysis,
+            reaction=name,
+            findings=find(analysis, name, asked, tables),
+            alternatives=alternatives,
+            notes=notes,
+        )
+    plain = Request(nucleophile=asked.nucleophile, base=asked.base, electrophile=asked.electrophile)
+    found: list[Finding] = []
+    for name in CLASSES:
+        try:
+            found.extend(find(analysis, name, plain, tables))
+        except MissingValue:
+            continue
+    return Reactivity(analysis=analysis, reaction="", findings=tuple(found), notes=notes)
+
+
+def _notes(analysis: Analysis) -> tuple[str, ...]:
+    notes = list(analysis.notes)
+    if any(scene.settled.configurations != scene.structure.configurations for scene in scenes(analysis)):
+        notes.append("A centre without configuration becomes one in the product: relative configuration is written.")
+    if analysis.medium == "protic" or analysis.conditions.medium == "protic":
+        notes.append("Amines and acids may be ionised in this medium.")
+    return tuple(notes)
+
+
+def best_of(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
+    """One finding for each class and reacting atoms: the most accessible, then the largest share."""
+    kept: dict[tuple[str, int, tuple[int, ...]], Finding] = {}
+    for finding in findings:
+        key = (finding.reaction, finding.ring_system, finding.leaving_atoms)
+        rival = kept.get(key)
+        if rival is None or _rank(finding) < _rank(rival):
+            kept[key] = finding
+    return tuple(kept.values())
+
+
+def _rank(finding: Finding) -> tuple[int, float, float]:
+    return _ORDER.index(finding.verdict), finding.cost_kcal or 0.0, -(finding.share or 0.0)
