@@ -38,6 +38,7 @@ def chairs(
     ledger: Annotated[
         bool, typer.Option("--ledger", help="Plain format: one row per ledger line instead of per state.")
     ] = False,
+    draw: Annotated[bool, typer.Option("--draw", help="Drawings of the states below the table.")] = False,
     temperature: common.TemperatureOption = "298.15",
     medium: common.MediumOption = "nonpolar",
     ring: common.RingOption = "cyclohexane",
@@ -55,7 +56,10 @@ def chairs(
     if nothing_given(structures):
         typer.echo(context.get_help(), err=True)
         return 2
-    output = common.make_output(format, json, units=units, ascii=ascii, no_color=no_color)
+    wanted = "table" if draw and format is None and not json else format
+    output = common.make_output(wanted, json, units=units, ascii=ascii, no_color=no_color)
+    if draw and output.format != "table":
+        raise UsageError("--draw goes with the table format.", "Use `ringstrain draw` for pictures alone.")
     tables = common.tables_for(table_file)
     question = Question(
         temperatures=common.parse_temperatures(temperature),
@@ -65,7 +69,7 @@ def chairs(
         tables=tables,
     )
     question.check()
-    writer = _Writer(output=output, tables=tables, ledger=ledger)
+    writer = _Writer(output=output, tables=tables, ledger=ledger, draw=draw)
     worst = 0
     for record in records(structures or []):
         try:
@@ -142,6 +146,7 @@ class _Writer:
     output: common.Output
     tables: Tables
     ledger: bool
+    draw: bool = False
     count: int = 0
 
     def write(self, answers: tuple[Analysis, ...]) -> None:
@@ -185,6 +190,14 @@ class _Writer:
         view = chairs_view(answers[0], self.tables.sources, look) if single else conditions_view(answers, look)
         for part in view:
             console.print(part)
+        if self.draw:
+            from ringstrain.views.drawing.terminal import states_text
+            from ringstrain.views.rich_tables import shown_states
+
+            for result in answers[0].ring_systems:
+                console.print()
+                for line in states_text(answers[0], result, shown_states(result), look).splitlines():
+                    console.print(look.text(line), soft_wrap=True)
 
     def fail(self, record: Record, error: RingstrainError) -> None:
         """Report a structure that failed: a JSON document in its place, else three lines on standard error."""

@@ -107,8 +107,8 @@ def choose_view(shapes: Shapes, model: Model) -> tuple[int, bool]:
     """Sixths of a turn and side from which a system is drawn, the same for all its states.
 
     A lone ring: atoms numbered clockwise; the oxygen of an oxane at the back right with its anomeric carbon at the
-    right tip; else the first substituted atom at the right tip, an exocyclic double bond before others; a flat bond at the front.  Several rings: as wide and
-    clear as possible, axial groups up rather than down, the first ring at the left.
+    right tip; else the first substituted atom at the right tip, an exocyclic double bond before others; a flat bond at
+    the front.  Several rings: as wide and clear as possible, axial groups up rather than down, the first at the left.
     """
     system = shapes.geometry.system
     if len(system.rings) == 1 and not model.side_rings:
