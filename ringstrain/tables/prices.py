@@ -388,10 +388,11 @@ class PriceBook:
         da, db = (getattr(s, f"{which}_uncertainty") for s in (first, second))
         value = a * b / unit
         sigma = math.hypot(da * b / unit, db * a / unit) if first.key != second.key else (da + db) * a / unit
+        row = "sizes/" + "+".join(sorted((first.key, second.key)))
         return Price(
             value_kcal=value,
-            terms=(Term(f"sizes/{first.key}+{second.key}", pair_key(x.key, y.key), 1.0, sigma),),
-            row=f"sizes/{first.key}+{second.key}",
+            terms=(Term(row, pair_key(x.key, y.key), 1.0, sigma),),
+            row=row,
             source="combining rule",
             known_by="computed",
             estimated=True,

@@ -58,6 +58,11 @@ def chairs(system: SystemResult) -> list[State]:
     return [state for state in system.states if set(state.shapes) == {"chair"}]
 
 
+def rounded(value: float) -> float:
+    """A number without its last digits; the shift keeps sums of short table values off the edge."""
+    return round(value + 1.7e-7, 6)
+
+
 def picture(system: SystemResult, origins: tuple[int, ...], *, all_states: bool = False) -> Counter[Any]:
     """Everything that must not depend on the writing, with atoms named as in the original."""
     return Counter(
@@ -66,8 +71,8 @@ def picture(system: SystemResult, origins: tuple[int, ...], *, all_states: bool 
             frozenset(origins[a] for a in state.axial),
             frozenset(origins[a] for a in state.equatorial),
             state.counts,
-            round(state.energy_kcal, 6),
-            round(state.uncertainty_kcal, 6),
+            rounded(state.energy_kcal),
+            rounded(state.uncertainty_kcal),
             state.lower_bound,
             state.regime,
             Counter((line.rule, line.groups, line.source, round(line.count, 6)) for line in state.lines).total(),
@@ -206,6 +211,10 @@ WRITTEN_TWICE = {
         "C1C[C@@]2(CCC[C@@H](C)C2)CC[C@]12C[C@@H](C)CCC2",
         "C1CC[C@@H](C)C[C@@]12CC[C@]1(CC2)CCC[C@H](C)C1",
     ),
+    "vicinal pairs priced by the combining rule": (
+        "C(C)(C)([C@@H]1[C@](C)(C)C[C@@H](C)[C@@H](C)[C@H]1C)C",
+        "C[C@H]1[C@H](C(C)(C)C)[C@@](C)(C)C[C@@H](C)[C@H]1C",
+    ),
     "geminal pair of a twist-boat": (
         "C1[C@@](C)(c2ccccc2)[C@H](O)[C@@H](C)CC1",
         "c1cccc([C@@]2(C)[C@H](O)[C@@H](C)CCC2)c1",
@@ -237,8 +246,8 @@ def pairs_with(*broken: str) -> list[Any]:
 def test_two_writings_of_one_compound_give_one_answer(pair: tuple[str, str]) -> None:
     assert Chem.CanonSmiles(pair[0]) == Chem.CanonSmiles(pair[1]), "the two are not one compound"
     (first,), (second,) = (rs.analyze(text).ring_systems for text in pair)
-    assert sorted((round(s.energy_kcal, 6), s.counts) for s in first.states) == sorted(
-        (round(s.energy_kcal, 6), s.counts) for s in second.states
+    assert sorted((rounded(s.energy_kcal), rounded(s.uncertainty_kcal), s.counts) for s in first.states) == sorted(
+        (rounded(s.energy_kcal), rounded(s.uncertainty_kcal), s.counts) for s in second.states
     )
     assert first.equilibrium is not None
     assert second.equilibrium is not None
