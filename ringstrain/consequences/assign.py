@@ -12,7 +12,7 @@ from ringstrain.analysis import analyze
 from ringstrain.consequences.assignment import Assignment, Candidate, NextProton, Unranked, Verdict
 from ringstrain.consequences.nmr import Signal, find_signals
 from ringstrain.consequences.observations import Fit, Observation, fit_atom
-from ringstrain.errors import InputError, OutOfScope, RingstrainError, UsageError
+from ringstrain.errors import InputError, OutOfScope, UsageError
 from ringstrain.isomers import rank_isomers
 from ringstrain.structure.records import Structure
 from ringstrain.tables import Tables, load_tables
@@ -189,23 +189,22 @@ def _score(
 ) -> _Scored | Unranked:
     """The candidate with its best mapping, or why it has none."""
     smiles = entry.structure.smiles
+    mappings = tuple(_mappings(structure, entry.structure, observations))
+    if not mappings:
+        raise UsageError(f"{smiles} has another constitution than the structure.", "Candidates differ in stereo only.")
     try:
         analysis = analyze(entry.structure, temperature_K=temperature_K, medium=medium, tables=tables)
     except (InputError, OutOfScope) as error:
-        return Unranked(smiles=smiles, reason=_sentence(error))
+        return Unranked(smiles=smiles, reason=error.problem)
     signals = find_signals(analysis, tables, spectra)
     best: _Scored | None = None
-    count = 0
-    for mapping in _mappings(structure, entry.structure, observations):
-        count += 1
+    for mapping in mappings:
         fits = _fit_all(observations, signals, mapping, spectra)
         if fits is None:
             continue
         outcome = _Scored(entry, signals, mapping, fits)
         if best is None or outcome.log_likelihood > best.log_likelihood + 1e-9:
             best = outcome
-    if not count:
-        raise UsageError(f"{smiles} has another constitution than the structure.", "Candidates differ in stereo only.")
     if best is not None:
         return best
     if any(s.splittings() is None for s in signals):
@@ -214,10 +213,6 @@ def _score(
         "An observed proton is no hydrogen of a saturated six-membered ring, or a carbon has too few hydrogens.",
         "`ringstrain nmr` lists the hydrogens and their numbers.",
     )
-
-
-def _sentence(error: RingstrainError) -> str:
-    return error.problem
 
 
 def _fit_all(

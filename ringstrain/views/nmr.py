@@ -164,7 +164,7 @@ def _per_form(spectrum: Spectrum, number: int, look: Look) -> Iterator[Renderabl
     table.add_column("3J", no_wrap=True)
     for state in shown:
         table.add_column(f"{state.id} / Hz", justify="right", no_wrap=True)
-    table.add_column(f"average {_PM} 95 %", justify="right", no_wrap=True)
+    table.add_column(look.say(f"average {_PM} 95 %"), justify="right", no_wrap=True)
     for name, values, average, sigma in coupling_rows(spectrum, number, tuple(s.id for s in shown)):
         mean = "?" if average is None else f"{hertz(average)} {_PM} {hertz(Z95 * (sigma or 0.0))}"
         table.add_row(look.text(name), *(look.text(hertz(v)) for v in values), look.text(mean))
@@ -222,7 +222,7 @@ def _carbons(spectrum: Spectrum, number: int, look: Look, notes: Footnotes) -> I
         table.add_column("carbon", no_wrap=True)
         for state in shown:
             table.add_column(f"{state.id} / ppm", justify="right", no_wrap=True)
-        table.add_column(f"average {_PM} 95 %", justify="right", no_wrap=True)
+        table.add_column(look.say(f"average {_PM} 95 %"), justify="right", no_wrap=True)
         table.add_column("gamma-gauche", justify="right", no_wrap=True)
         for atoms, shift in _merged(known):
             values = dict(shift.per_state)
