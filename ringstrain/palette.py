@@ -25,7 +25,7 @@ class PaletteGroup:
     Attributes
     ----------
     name
-        As a table or the user calls it.
+        As the user calls it.
     branch
         Its structure.
     group
@@ -37,34 +37,18 @@ class PaletteGroup:
     group: Group
 
 
-def find_groups(names: Sequence[str], tables: Tables) -> tuple[PaletteGroup, ...]:
-    """The distinct groups among names, in order of appearance.
-
-    Parameters
-    ----------
-    names
-        Table keys, aliases or SMILES with a star (``*CC=O``).
-    tables
-        Price tables.
+def find_group(name: str, tables: Tables) -> PaletteGroup:
+    """The group behind a table key, an alias or a SMILES with a star (``*CC=O``).
 
     Raises
     ------
     UnknownGroup
-        If a name is unknown.
+        If no table knows the name.
     UsageError
-        If a group is bound through a double bond.
+        If the group is bound through a double bond.
     ParseError
-        If a SMILES is no group.
+        If the SMILES is no group.
     """
-    found: dict[int, PaletteGroup] = {}
-    for name in names:
-        group = find_group(name, tables)
-        found.setdefault(group.group.code, group)
-    return tuple(found.values())
-
-
-def find_group(name: str, tables: Tables) -> PaletteGroup:
-    """One group by table key, alias or SMILES; see :func:`find_groups`."""
     text = name.strip()
     entry = None if "*" in text else tables.find_group(text)
     if entry is None and "*" not in text:
@@ -79,7 +63,7 @@ def find_group(name: str, tables: Tables) -> PaletteGroup:
         )
     probe, heads = graft(read("C1CCCCC1"), [(0, branch)])
     group = describe_group(probe, heads[0], 0, frozenset(range(6)), tables)
-    return PaletteGroup(name=entry.key if entry else text, branch=branch, group=group)
+    return PaletteGroup(name=text, branch=branch, group=group)
 
 
 def geometry_of(structure: Structure, system: RingSystem) -> Geometry:

@@ -33,7 +33,7 @@ if TYPE_CHECKING:
     from ringstrain.tables import Tables
 
 #: More labelled placements than this in one call are refused.
-MAX_PLACEMENTS = 20_000_000
+MAX_PLACEMENTS = 5_000_000
 _CHUNK = 100_000
 _MARK = re.compile(r":(\d+)\]$")
 _RING_SMILES = {"C": "C", "N": "N", "O": "O", "S": "S", "Si": "[SiH2]"}
@@ -196,11 +196,11 @@ def _marks(structure: Structure) -> dict[int, int]:
 
 
 def _direction(system: RingSystem) -> int:
-    """+1 when the positive faces of the first ring are the upper ones with its lowest atoms running clockwise."""
+    """+1 when the positive faces of the first ring are the upper ones, its lowest atoms running clockwise from above."""
     ring = system.rings[0].atoms
     place = ring.index(min(ring))
     forward = ring[(place + 1) % 6] < ring[place - 1]
-    return -1 if forward else 1
+    return 1 if forward else -1
 
 
 def _slots(

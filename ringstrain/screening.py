@@ -6,6 +6,7 @@ group that flattens a ring nitrogen) goes through :func:`ringstrain.analyze` one
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
@@ -80,6 +81,30 @@ class Screen:
     def join(cls, parts: list[Screen]) -> Screen:
         """Blocks one after the other."""
         return cls(**{name: np.concatenate([getattr(part, name) for part in parts]) for name in cls.__slots__})
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Weighed:
+    """One pattern weighed by a full analysis.
+
+    Attributes
+    ----------
+    energy_kcal
+        Free energy of all states [kcal/mol]; None when an unpriced contact decides.
+    form_share
+        Population of the commonest ring shape [-].
+    axial_share, equatorial_share
+        By slot [-].
+    axial, equatorial
+        Slots of the lowest state.
+    """
+
+    energy_kcal: float | None
+    form_share: float | None
+    axial_share: dict[int, float]
+    equatorial_share: dict[int, float]
+    axial: frozenset[int]
+    equatorial: frozenset[int]
 
 
 @dataclass(kw_only=True)
@@ -350,6 +375,38 @@ class Screener:
             flags |= (plain[rows] > 0).all(axis=1) & (oxygen[rows].sum(axis=1) >= enough)
         return flags
 
+    def weigh(self, result: SystemResult, heads: dict[int, int]) -> Weighed:
+        """The same numbers from a full analysis.
+
+        Parameters
+        ----------
+        result
+            The ring system of the pattern.
+        heads
+            First atom of each group by slot.
+        """
+        states = result.states
+        lowest = states[0]
+        known = lowest.population is not None
+        forms: dict[object, float] = {}
+        for state in states:
+            rings = state.detail.shapes.rings
+            forms[rings] = forms.get(rings, 0.0) + (state.population or 0.0)
+        shares: dict[str, dict[int, float]] = {"axial": {}, "equatorial": {}}
+        for which, table in shares.items():
+            for slot, head in heads.items():
+                if known and any(head in s.axial or head in s.equatorial for s in states):
+                    table[slot] = math.fsum(s.population or 0.0 for s in states if head in getattr(s, which))
+        temperature = self.conditions.temperature_K
+        return Weighed(
+            energy_kcal=mixture_energy([s.energy_kcal for s in states], temperature) if known else None,
+            form_share=max(forms.values()) if known else None,
+            axial_share=shares["axial"],
+            equatorial_share=shares["equatorial"],
+            axial=frozenset(slot for slot, head in heads.items() if head in lowest.axial),
+            equatorial=frozenset(slot for slot, head in heads.items() if head in lowest.equatorial),
+        )
+
     def _weigh_one(self, screen: Screen, number: int) -> bool:
         """Fill one row from a full analysis; False when the ring cannot close."""
         structure, heads = self.structure(screen.rows[number])
@@ -357,28 +414,16 @@ class Screener:
             result = self.system_of(self.analysis(structure))
         except OutOfScope:
             return False
-        equilibrium = result.equilibrium
-        gap = equilibrium.dG_kcal if equilibrium else None
+        weighed = self.weigh(result, heads)
+        gap = result.equilibrium.dG_kcal if result.equilibrium else None
         screen.dg_kcal[number] = np.nan if gap is None else gap
-        known = result.states[0].population is not None
-        energies = [state.energy_kcal for state in result.states]
-        screen.energy_kcal[number] = mixture_energy(energies, self.conditions.temperature_K) if known else np.nan
-        forms: dict[object, float] = {}
-        for state in result.states:
-            forms[state.detail.shapes.rings] = forms.get(state.detail.shapes.rings, 0.0) + (state.population or 0.0)
-        screen.form_share[number] = max(forms.values()) if known else np.nan
-        lowest = result.states[0]
-        for shares, which in ((screen.axial_share, "axial"), (screen.equatorial_share, "equatorial")):
-            shares[number] = np.nan
-            for slot, head in heads.items():
-                if self._uncounted[screen.rows[number, slot]]:
-                    continue
-                total = sum(s.population or 0.0 for s in result.states if head in getattr(s, which))
-                shares[number, slot] = total if known else np.nan
-        screen.favoured_axial[number] = screen.favoured_equatorial[number] = False
-        for slot, head in heads.items():
-            screen.favoured_axial[number, slot] = head in lowest.axial
-            screen.favoured_equatorial[number, slot] = head in lowest.equatorial
+        screen.energy_kcal[number] = np.nan if weighed.energy_kcal is None else weighed.energy_kcal
+        screen.form_share[number] = np.nan if weighed.form_share is None else weighed.form_share
+        slots = range(len(self.scaffold.slots))
+        screen.axial_share[number] = [weighed.axial_share.get(slot, np.nan) for slot in slots]
+        screen.equatorial_share[number] = [weighed.equatorial_share.get(slot, np.nan) for slot in slots]
+        screen.favoured_axial[number] = [slot in weighed.axial for slot in slots]
+        screen.favoured_equatorial[number] = [slot in weighed.equatorial for slot in slots]
         return True
 
 
