@@ -401,8 +401,8 @@ def test_epimer_equilibrium(less: str, more: str, medium: str, expected: float, 
 
 
 def test_3_5_dimethylcyclohexanone_epimers_differ_by_the_3_alkyl_ketone_effect() -> None:
-    # Reproduction. N. L. Allinger, L. A. Freiberg, J. Am. Chem. Soc. 1962, 84, 2201 (recalled): dH 1.36 +- 0.1, so the lowest
-    # states are compared; the two like chairs of the trans isomer are entropy.
+    # Reproduction. N. L. Allinger, L. A. Freiberg, J. Am. Chem. Soc. 1962, 84, 2201 (recalled): dH 1.36 +- 0.1, so
+    # the lowest states are compared; the two like chairs of the trans isomer are entropy.
     trans, cis = only("C[C@@H]1CC(=O)C[C@@H](C)C1"), only("C[C@@H]1CC(=O)C[C@H](C)C1")
     assert trans.states[0].energy_kcal - cis.states[0].energy_kcal == pytest.approx(1.36, abs=0.1)
 
