@@ -57,11 +57,13 @@ def anhydrides(scene: Scene) -> list[Option]:
                     partner_atoms=(oxygen,),
                     product_smiles=product,
                     pathway="1,6-anhydride",
-                    reason=f"State {state.id}{f' ({state.form})' if state.form else ''}: CH2OH {arm + 1} is axial and O "
+                    reason=f"State {state.id}{f' ({state.form})' if state.form else ''}: CH2OH {arm + 1} is axial "
+                    "and O "
                     f"{oxygen + 1} reaches C {anomeric + 1} across the ring oxygen.",
                     confidence="direction only",
                     limits=(
-                        "The share at equilibrium falls with each hydroxyl that has to turn axial; it is not computed here.",
+                        "The share at equilibrium falls with each hydroxyl that has to turn axial; it is not "
+                        "computed here.",
                     ),
                     cautions=(CAUTION,),
                     sources=("angyal-dawes-1968",),

@@ -51,20 +51,23 @@ def options(scene: Scene, request: Request) -> list[Option]:
     pairs = alcohols(scene)
     if pairs and request.reagent != "hydrolysis":
         return _acylations(scene, request, pairs)
-    return [o for ester in _esters(scene) for o in _hydrolyses(scene, ester)] if request.reagent != "acyl transfer" else []
+    return (
+        [o for ester in _esters(scene) for o in _hydrolyses(scene, ester)] if request.reagent != "acyl transfer" else []
+    )
 
 
 def _states(scene: Scene) -> list[State]:
     return [s for s in scene.states if not has_boat(s)] or list(scene.states)
 
 
-def _is_beside_branched(scene: Scene, carbon: int) -> bool:
-    """True when a neighbouring ring atom carries a branched alkyl group."""
+def _is_beside_branched(scene: Scene, state: State, carbon: int) -> bool:
+    """True when a neighbouring ring atom carries an equatorial branched alkyl group."""
     structure = scene.structure
     return any(
         structure.atoms[x].number == 6
         and not structure.atoms[x].aromatic
         and sum(structure.atoms[m].number == 6 for m in structure.neighbours[x]) > 2
+        and scene.position(state, n, x) == "equatorial"
         for n in scene.ring_neighbours(carbon)
         for x in scene.outer(n)
     )
@@ -99,17 +102,16 @@ def _acylations(scene: Scene, request: Request, pairs: tuple[tuple[int, int], ..
     acyl = Request(electrophile=request.electrophile or request.nucleophile).electrophile_or("C(C)=O")
     best = scene.states[0]
     activated = [
-        (c, o)
-        for c, o in pairs
-        if scene.position(best, c, o) == "equatorial" and _axial_ethers(scene, best, c)
+        (c, o) for c, o in pairs if scene.position(best, c, o) == "equatorial" and _axial_ethers(scene, best, c)
     ]
     found: list[Option] = []
     for carbon, oxygen in pairs:
         product = acylated(scene, carbon, oxygen, acyl)
-        factor = rule("acylation-beside-alkyl" if _is_beside_branched(scene, carbon) else "acylation-equatorial")
         tertiary = scene.structure.atoms[carbon].hydrogens == 0
         for state in _states(scene):
             equatorial = scene.position(state, carbon, oxygen) == "equatorial"
+            beside = _is_beside_branched(scene, state, carbon)
+            factor = rule("acylation-beside-alkyl" if beside else "acylation-equatorial")
             crowd = _hindrance(scene, state, carbon, oxygen)
             limits = ["Intramolecular hydrogen bonds and tin or boron acetals (cis diols) can invert the order."]
             where = scene.describe(state, carbon, oxygen)
@@ -126,7 +128,9 @@ def _acylations(scene: Scene, request: Request, pairs: tuple[tuple[int, int], ..
                 confidence = "direction only"
             elif activated:
                 weight, confidence = None, "direction only"
-                limits.append("Another equatorial hydroxyl beside an axial alkoxy group reacts first; no factor is tabulated.")
+                limits.append(
+                    "Another equatorial hydroxyl beside an axial alkoxy group reacts first; no factor is tabulated."
+                )
             finding = _finding(scene, state, oxygen, carbon, limits, factor, CAUTION).with_product(product)
             found.append(
                 Option(
@@ -179,7 +183,11 @@ def _esters(scene: Scene) -> list[_Ester]:
                 structure.bond(x, n).order == 2 and structure.atoms[n].number == 8 for n in structure.neighbours[x]
             ):
                 for n in structure.neighbours[x]:
-                    if structure.atoms[n].number == 8 and structure.bond(x, n).order == 1 and len(structure.neighbours[n]) == 2:
+                    if (
+                        structure.atoms[n].number == 8
+                        and structure.bond(x, n).order == 1
+                        and len(structure.neighbours[n]) == 2
+                    ):
                         found.append(_Ester(carbon, x, x, int(n)))
     return found
 
@@ -201,7 +209,9 @@ def _hydrolyses(scene: Scene, ester: _Ester) -> list[Option]:
         crowd = _hindrance(scene, state, ester.carbon, ester.first)
         limits = [f"(limit) Syn-axial carbon {numbers(*crowd)}: slower still."] if crowd else []
         finding = _finding(scene, state, ester.first, ester.carbon, limits, used, CAUTION).with_product(product)
-        reason = f"State {state.id}: {scene.describe(state, ester.carbon, ester.first)}; equatorial esters hydrolyse faster."
+        reason = (
+            f"State {state.id}: {scene.describe(state, ester.carbon, ester.first)}; equatorial esters hydrolyse faster."
+        )
         found.append(
             Option(
                 finding=_worded(finding, "ester hydrolysis", reason, "order of magnitude"),

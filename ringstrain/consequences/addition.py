@@ -134,7 +134,8 @@ def _diequatorial(
         cost_kcal=scene.cost(state) + extra.number,
         product_smiles=added_pair(scene, first, second),
         pathway="trans-diequatorial product, by equilibration of the diaxial one",
-        reason="The ring is locked: the diequatorial isomer does not form directly but may follow on standing or heating.",
+        reason="The ring is locked: the diequatorial isomer does not form directly but may follow on standing or "
+        "heating.",
         confidence="direction only",
         sources=(*extra.sources, "barton-alt-1954"),
     )
@@ -166,7 +167,8 @@ def _limits(scene: Scene, a: int, b: int) -> tuple[str, ...]:
     )
     if polar:
         found.append(
-            f"(limit) Polar group {numbers(*polar)} near the double bond can turn the opening to the diequatorial side or "
+            f"(limit) Polar group {numbers(*polar)} near the double bond can turn the opening to the diequatorial "
+            "side or "
             "take part."
         )
     if any(structure.atoms[x].aromatic for c in (a, b) for x in scene.outer(c)):

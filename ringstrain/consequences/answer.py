@@ -51,9 +51,7 @@ def check_class(name: str) -> ReactionClass:
     raise UsageError(f"No reaction class is called {name!r}.", f"Use one of {', '.join(CLASSES)}.")
 
 
-def weigh(
-    analysis: Analysis, reaction: ReactionClass, request: Request, tables: Tables | None = None
-) -> list[Option]:
+def weigh(analysis: Analysis, reaction: ReactionClass, request: Request, tables: Tables | None = None) -> list[Option]:
     """Options of one class over all ring systems, shares not yet settled.
 
     Parameters
@@ -103,9 +101,7 @@ def find(
     beside: dict[tuple[int, ...], tuple[float, float, float, str] | None] = {}
     for option in options:
         if option.centres and option.centres not in beside:
-            beside[option.centres] = _beside_epimer(
-                analysis, reaction, asked, options, option.centres, tables
-            )
+            beside[option.centres] = _beside_epimer(analysis, reaction, asked, options, option.centres, tables)
     compared = []
     for option in options:
         ratio = beside.get(option.centres) if option.centres else None
@@ -178,9 +174,7 @@ def _beside_epimer(
     if smiles in (tidy_smiles(structure), tidy_smiles(mirror(structure))):
         return None
     try:
-        epimer = analyze(
-            other, temperature_K=analysis.temperature_K, medium=analysis.medium, tables=tables
-        )
+        epimer = analyze(other, temperature_K=analysis.temperature_K, medium=analysis.medium, tables=tables)
         rivals = weigh(epimer, reaction, request, tables)
     except RingstrainError:
         return None

@@ -138,7 +138,7 @@ def _lactone(scene: Scene, acid: _Arm, hydroxyl: _Arm) -> list[Option]:
     place = _apart(scene, acid.ring_atom, hydroxyl.ring_atom)
     if place is None:
         return []
-    apart, ring = place
+    apart, _ = place
     size = apart + 3 + acid.between + hydroxyl.between
     if size < 5:
         return []
@@ -153,7 +153,8 @@ def _lactone(scene: Scene, acid: _Arm, hydroxyl: _Arm) -> list[Option]:
         ]
         limits = () if cis else ("A trans-fused five-membered lactone closes but is strained.",)
         return [
-            _closed(scene, s, acid, hydroxyl, f"State {s.id}: {pair} are gauche.", "fused lactone", limits) for s in near
+            _closed(scene, s, acid, hydroxyl, f"State {s.id}: {pair} are gauche.", "fused lactone", limits)
+            for s in near
         ] or [_no(scene, acid, hydroxyl, "locked out", f"{pair} are anti in every state.", limits)]
     if not cis:
         return [_no(scene, acid, hydroxyl, "locked out", f"{pair} stand on opposite faces and cannot meet.", ())]
@@ -167,10 +168,21 @@ def _lactone(scene: Scene, acid: _Arm, hydroxyl: _Arm) -> list[Option]:
     ]
     if both:
         return [
-            _closed(scene, s, acid, hydroxyl, f"State {s.id}: {pair} are both axial on one face.", "1,3-bridged lactone", ())
+            _closed(
+                scene, s, acid, hydroxyl, f"State {s.id}: {pair} are both axial on one face.", "1,3-bridged lactone", ()
+            )
             for s in both
         ]
-    return [_no(scene, acid, hydroxyl, "needs a boat", f"{pair}: no chair has both axial; it cannot close without a boat.", ())]
+    return [
+        _no(
+            scene,
+            acid,
+            hydroxyl,
+            "needs a boat",
+            f"{pair}: no chair has both axial; it cannot close without a boat.",
+            (),
+        )
+    ]
 
 
 def _closed(
@@ -197,9 +209,7 @@ def _closed(
     return Option(finding=finding, weight=scene.shares[state.id], sigma_ln=scene.sigma_ln(state))
 
 
-def _no(
-    scene: Scene, acid: _Arm, hydroxyl: _Arm, verdict: Verdict, reason: str, limits: tuple[str, ...]
-) -> Option:
+def _no(scene: Scene, acid: _Arm, hydroxyl: _Arm, verdict: Verdict, reason: str, limits: tuple[str, ...]) -> Option:
     finding = Finding(
         reaction="closure",
         ring_system=scene.number,

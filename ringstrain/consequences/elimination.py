@@ -101,9 +101,7 @@ def _worth_listing(scene: Scene, pairs: list[_Pair]) -> list[_Pair]:
         rivals = [p for p in pairs if p.carbon == pair.carbon]
         total = sum(scene.shares[p.state.id] for p in rivals)
         chair = any(not has_boat(p.state) for p in rivals)
-        if not has_boat(pair.state) or not chair:
-            kept.append(pair)
-        elif total and scene.shares[pair.state.id] / total > _WORTH_LISTING:
+        if not has_boat(pair.state) or not chair or (total and scene.shares[pair.state.id] / total > _WORTH_LISTING):
             kept.append(pair)
     return kept
 
@@ -157,7 +155,13 @@ def _of_pair(scene: Scene, pair: _Pair, request: Request) -> Option:
         reagent=f"{request.base_size} base",
         sources=tuple(dict.fromkeys((*used.sources, "cristol-1947", "winstein-holness-1955"))),
     )
-    return Option(finding=finding, weight=weight, sigma_ln=scene.sigma_ln(state, spread), centres=(leaving.carbon,), relief_ln=_relief_ln(scene, pair))
+    return Option(
+        finding=finding,
+        weight=weight,
+        sigma_ln=scene.sigma_ln(state, spread),
+        centres=(leaving.carbon,),
+        relief_ln=_relief_ln(scene, pair),
+    )
 
 
 def _relief_ln(scene: Scene, pair: _Pair) -> float:
@@ -238,7 +242,8 @@ def _outside(scene: Scene, leaving: Leaving) -> list[Option]:
             partner_atoms=(anchor,),
             product_smiles=product,
             pathway="elimination to an exocyclic alkene",
-            reason=f"{leaving.name} {leaving.atom + 1} sits outside the ring on {scene.describe(state, anchor, leaving.carbon)}"
+            reason=f"{leaving.name} {leaving.atom + 1} sits outside the ring on "
+            f"{scene.describe(state, anchor, leaving.carbon)}"
             " and can turn anti in every state.",
             confidence="order of magnitude",
             limits=(ASSUMPTION,),
@@ -274,7 +279,8 @@ def _dehalogenations(scene: Scene, leaving: Leaving, *, weigh: bool) -> list[Opt
             limits = [ASSUMPTION]
             if sulfonate:
                 limits.append(
-                    "(limit) With iodide a sulfonate is first displaced by SN2, which can reverse the order: the diaxial "
+                    "(limit) With iodide a sulfonate is first displaced by SN2, which can reverse the order: the "
+                    "diaxial "
                     "isomer need not be the fast one."
                 )
             shared = {
@@ -308,7 +314,8 @@ def _dehalogenations(scene: Scene, leaving: Leaving, *, weigh: bool) -> list[Opt
                     verdict="locked out",
                     product_smiles=product if sulfonate else None,
                     pathway="no anti pair of leaving groups in any state",
-                    reason=f"Leaving groups {numbers(leaving.atom, x)} are anti in no state; loss is slow or needs another way.",
+                    reason=f"Leaving groups {numbers(leaving.atom, x)} are anti in no state; loss is slow or needs "
+                    "another way.",
                     limits=tuple(limits),
                     **shared,  # type: ignore[arg-type]
                 )

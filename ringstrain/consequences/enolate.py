@@ -21,7 +21,8 @@ from ringstrain.structure.edit import Draft
 from ringstrain.structure.records import Structure
 
 CAUTION = (
-    "Alkyl iodides, sulfates and triflates are toxic alkylators; HMPA is a carcinogen; LDA and NaH ignite. Follow local "
+    "Alkyl iodides, sulfates and triflates are toxic alkylators; HMPA is a carcinogen; LDA and NaH ignite. Follow "
+    "local "
     "rules and ask a qualified colleague."
 )
 REAGENTS = ("lithium enolate", "equilibrated enolate", "enamine", "azaenolate")
@@ -71,7 +72,9 @@ def options(scene: Scene, request: Request) -> list[Option]:
             continue
         taken = _taken_sides(scene, sides, reagent)
         for alpha in sides:
-            found.extend(_side(scene, reagent, group, carbon, oxygen, alpha, 1.0 / len(taken) if alpha in taken else None))
+            found.extend(
+                _side(scene, reagent, group, carbon, oxygen, alpha, 1.0 / len(taken) if alpha in taken else None)
+            )
     return found
 
 
@@ -80,7 +83,7 @@ def _branches(scene: Scene, alpha: int) -> int:
 
 
 def _taken_sides(scene: Scene, sides: list[int], reagent: str) -> list[int]:
-    """Alpha carbons that react: an acidified one always, else the less branched one, or the more branched at equilibrium."""
+    """Alpha carbons that react: an acidified one, else the less branched one (the more branched at equilibrium)."""
     acidified = [a for a in sides if any(is_acidifying(scene.structure, n) for n in scene.outer(a))]
     if acidified:
         return acidified
@@ -148,9 +151,9 @@ def _side(
                 weight = own.shares[state.id] * part * (number if axial else 1.0 - number)
             found.append(
                 Option(
-                    finding=_finding(scene, enol, state, reagent, used, blockers, alpha, part, axial=axial).with_product(
-                        products[face], balance[face] if balance else None
-                    ),
+                    finding=_finding(
+                        scene, enol, state, reagent, used, blockers, alpha, part, axial=axial
+                    ).with_product(products[face], balance[face] if balance else None),
                     weight=weight,
                     sigma_ln=own.sigma_ln(state, 0.0 if axial else used.sigma_ln),
                 )
@@ -175,7 +178,8 @@ def _finding(
     limits: list[str] = []
     if blockers:
         limits.append(
-            f"(limit) Syn-axial group {numbers(*(enol.back[b] for b in blockers))} stands on the face of axial attack and "
+            f"(limit) Syn-axial group {numbers(*(enol.back[b] for b in blockers))} stands on the face of axial "
+            "attack and "
             "reverses it."
         )
     if part is None:

@@ -108,7 +108,8 @@ def _openings(scene: Scene, request: Request, a: int, b: int, oxygen: int) -> li
             partner_atoms=(attacked, kept),
             product_smiles=opened_epoxide(scene, attacked, kept, oxygen, entering),
             pathway=f"trans-diaxial opening, attack at C {attacked + 1}",
-            reason=f"Half-chair {state.id} turns directly into the chair in which O {oxygen + 1} on C {kept + 1} and the "
+            reason=f"Half-chair {state.id} turns directly into the chair in which O {oxygen + 1} on C {kept + 1} "
+            "and the "
             f"nucleophile on C {attacked + 1} are both axial.",
             confidence=confidence,
             limits=limits,
@@ -123,9 +124,7 @@ def _openings(scene: Scene, request: Request, a: int, b: int, oxygen: int) -> li
     return found
 
 
-def _half_chairs(
-    scene: Scene, ready: Sequence[State], carbons: set[int]
-) -> tuple[dict[str, float], dict[str, float]]:
+def _half_chairs(scene: Scene, ready: Sequence[State], carbons: set[int]) -> tuple[dict[str, float], dict[str, float]]:
     """Cost [kcal/mol] and share of each half-chair; groups on the flat carbons do not enter.
 
     What stands on the carbons of the three-ring lies between axial and equatorial in both half-chairs.
@@ -194,7 +193,8 @@ def _limits(scene: Scene, a: int, b: int) -> tuple[str, ...]:
     ]
     if near:
         found.append(
-            f"(limit) Heteroatom {numbers(*near)} next to the epoxide can chelate, take part or migrate (epoxide shift)."
+            f"(limit) Heteroatom {numbers(*near)} next to the epoxide can chelate, take part or migrate (epoxide "
+            "shift)."
         )
     if any(structure.atoms[n].aromatic for c in (a, b) for n in scene.outer(c)):
         found.append("(limit) Benzylic carbon: acid opens it through a cation, from either face.")
@@ -227,7 +227,11 @@ def _closure(scene: Scene, carbon: int, oxygen: int, other: int, leaving: int, n
     anti = [s for s in scene.states if scene.is_anti(s, oxygen, carbon, other, leaving)]
     anti = [s for s in anti if not has_boat(s)] or anti[:1]
     diol = name == "activated hydroxyl"
-    limits = ("One hydroxyl must be activated first (sulfurane, Mitsunobu or sulfonate); which one is not predicted.",) if diol else ()
+    limits = (
+        ("One hydroxyl must be activated first (sulfurane, Mitsunobu or sulfonate); which one is not predicted.",)
+        if diol
+        else ()
+    )
     sources = ("martin-et-al-1974",) if diol else ("fuerst-plattner-1949",)
     if not anti:
         finding = Finding(
@@ -237,7 +241,8 @@ def _closure(scene: Scene, carbon: int, oxygen: int, other: int, leaving: int, n
             leaving_atoms=(leaving,),
             partner_atoms=(oxygen,),
             pathway="no epoxide: oxygen and leaving group are anti in no state",
-            reason=f"O {oxygen + 1} and {name} {leaving + 1} are anti in no state; expect a ketone, contraction or elimination.",
+            reason=f"O {oxygen + 1} and {name} {leaving + 1} are anti in no state; expect a ketone, contraction or "
+            "elimination.",
             limits=limits,
             cautions=(CAUTION,),
             sources=sources,
@@ -258,7 +263,8 @@ def _closure(scene: Scene, carbon: int, oxygen: int, other: int, leaving: int, n
             partner_atoms=(oxygen,),
             product_smiles=product,
             pathway="closure to an epoxide with inversion",
-            reason=f"In state {state.id} {scene.describe(state, carbon, oxygen)} and {scene.describe(state, other, leaving)} "
+            reason=f"In state {state.id} {scene.describe(state, carbon, oxygen)} and "
+            f"{scene.describe(state, other, leaving)} "
             "are anti.",
             confidence="direction only" if diol else "order of magnitude",
             limits=limits,
@@ -266,9 +272,7 @@ def _closure(scene: Scene, carbon: int, oxygen: int, other: int, leaving: int, n
             sources=sources,
         )
         found.append(
-            Option(
-                finding=finding, weight=scene.shares[state.id], sigma_ln=scene.sigma_ln(state), centres=(other,)
-            )
+            Option(finding=finding, weight=scene.shares[state.id], sigma_ln=scene.sigma_ln(state), centres=(other,))
         )
     return found
 

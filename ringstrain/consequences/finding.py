@@ -198,9 +198,7 @@ def settle(options: Sequence[Option]) -> tuple[Finding, ...]:
                 own = 1.0 if other is option else 0.0
                 spread += ((own - other.weight / total) * other.sigma_ln) ** 2
         factor = math.exp(min(Z95 * math.sqrt(spread), 50.0))
-        finding = replace(
-            option.finding, share=share, share_low=share / factor, share_high=min(1.0, share * factor)
-        )
+        finding = replace(option.finding, share=share, share_low=share / factor, share_high=min(1.0, share * factor))
         outcome.append((1.0 - share, place, finding))
     outcome.sort(key=lambda item: (round(item[0], 9), item[1]))
     return tuple(finding for _, _, finding in outcome)

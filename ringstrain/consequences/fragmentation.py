@@ -56,8 +56,13 @@ def _chains(scene: Scene, leaving: Leaving) -> list[tuple[int, int, int]]:
             for x in structure.neighbours[c]:
                 record = structure.atoms[x]
                 hydroxyl = record.number == 8 and len(structure.neighbours[x]) == 1 and structure.bond(c, x).order == 1
-                amine = record.number == 7 and record.charge == 0 and all(
-                    structure.bond(x, n).order == 1 and not structure.bond(x, n).aromatic for n in structure.neighbours[x]
+                amine = (
+                    record.number == 7
+                    and record.charge == 0
+                    and all(
+                        structure.bond(x, n).order == 1 and not structure.bond(x, n).aromatic
+                        for n in structure.neighbours[x]
+                    )
                 )
                 if x != b and (hydroxyl or amine) and not _is_acyl(scene, c, int(x)):
                     found.append((int(b), int(c), int(x)))
@@ -114,7 +119,8 @@ def _finding(scene: Scene, state: State, leaving: Leaving, b: int, c: int, x: in
         partner_atoms=(x, c, b),
         product_smiles=_product(scene, state, leaving, b, c, x),
         pathway=f"fragmentation of bond {b + 1}-{c + 1}",
-        reason=f"State {state.id}: {scene.describe(state, leaving.carbon, leaving.atom)} ({leaving.name}) is anti to bond "
+        reason=f"State {state.id}: {scene.describe(state, leaving.carbon, leaving.atom)} ({leaving.name}) is anti "
+        "to bond "
         f"{b + 1}-{c + 1}, and donor {x + 1} stands on C {c + 1}.",
         confidence="direction only",
         limits=tuple(limits),

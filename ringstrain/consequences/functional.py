@@ -85,9 +85,7 @@ def leaving_groups(scene: Scene, *, outside: bool = True) -> tuple[Leaving, ...]
                 for m in structure.neighbours[n]:
                     far = leaving_name(structure, n, m) if m != ring_atom else None
                     if far:
-                        found.append(
-                            Leaving(carbon=n, atom=int(m), ring_atom=ring_atom, kind=far[0], name=far[1])
-                        )
+                        found.append(Leaving(carbon=n, atom=int(m), ring_atom=ring_atom, kind=far[0], name=far[1]))
     return tuple(found)
 
 
@@ -117,7 +115,9 @@ def syn_leaving(structure: Structure, carbon: int, atom: int) -> SynKind | None:
 def is_hydroxyl(structure: Structure, atom: int) -> bool:
     """True for the oxygen of OH or an alkoxide."""
     record = structure.atoms[atom]
-    return record.number == 8 and len(structure.neighbours[atom]) == 1 and (record.hydrogens == 1 or record.charge == -1)
+    return (
+        record.number == 8 and len(structure.neighbours[atom]) == 1 and (record.hydrogens == 1 or record.charge == -1)
+    )
 
 
 def alcohols(scene: Scene) -> tuple[tuple[int, int], ...]:
@@ -147,9 +147,7 @@ def ketones(scene: Scene) -> tuple[tuple[int, int], ...]:
     for atom in scene.ring_atoms:
         if structure.atoms[atom].number != 6:
             continue
-        oxygen = [
-            n for n in scene.outer(atom) if structure.atoms[n].number == 8 and structure.bond(atom, n).order == 2
-        ]
+        oxygen = [n for n in scene.outer(atom) if structure.atoms[n].number == 8 and structure.bond(atom, n).order == 2]
         beside = [n for n in structure.neighbours[atom] if n not in oxygen]
         if oxygen and len(beside) == 2 and all(structure.atoms[n].number == 6 for n in beside):
             found.append((atom, oxygen[0]))
@@ -197,8 +195,6 @@ def is_acidifying(structure: Structure, atom: int) -> bool:
     record = structure.atoms[atom]
     around = structure.neighbours[atom]
     if record.number == 6 and not record.aromatic:
-        return any(
-            structure.bond(atom, n).order > 1 and structure.atoms[n].number in (7, 8) for n in around
-        )
+        return any(structure.bond(atom, n).order > 1 and structure.atoms[n].number in (7, 8) for n in around)
     oxides = sum(structure.atoms[n].number == 8 for n in around)
     return (record.number == 7 and oxides >= 2) or (record.number == 16 and oxides >= 2)

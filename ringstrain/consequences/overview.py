@@ -11,7 +11,6 @@ from ringstrain.consequences.finding import Finding, Verdict
 from ringstrain.consequences.reduction import REAGENTS as KETONE_REAGENTS
 from ringstrain.consequences.request import Request
 from ringstrain.consequences.scene import scenes
-from ringstrain.errors import MissingValue
 from ringstrain.tables.records import Tables
 
 _ORDER: tuple[Verdict, ...] = ("open", "needs the flip", "needs a boat", "locked out")
@@ -93,7 +92,6 @@ def react(
     ['needs the flip']
     """
     asked = request or Request()
-    notes = _notes(analysis)
     if reaction:
         name = check_class(reaction)
         alternatives: tuple[Finding, ...] = ()
@@ -103,26 +101,23 @@ def react(
                 for reagent in KETONE_REAGENTS[1:]
                 for finding in find(analysis, name, Request(reagent=reagent), tables)
             )
+        found = find(analysis, name, asked, tables)
         return Reactivity(
             analysis=analysis,
             reaction=name,
-            findings=find(analysis, name, asked, tables),
+            findings=found,
             alternatives=alternatives,
-            notes=notes,
+            notes=_notes(analysis, found),
         )
     plain = Request(nucleophile=asked.nucleophile, base=asked.base, electrophile=asked.electrophile)
-    found: list[Finding] = []
-    for name in CLASSES:
-        try:
-            found.extend(find(analysis, name, plain, tables))
-        except MissingValue:
-            continue
-    return Reactivity(analysis=analysis, reaction="", findings=tuple(found), notes=notes)
+    everything = tuple(finding for name in CLASSES for finding in find(analysis, name, plain, tables))
+    return Reactivity(analysis=analysis, reaction="", findings=everything, notes=_notes(analysis, everything))
 
 
-def _notes(analysis: Analysis) -> tuple[str, ...]:
+def _notes(analysis: Analysis, findings: tuple[Finding, ...]) -> tuple[str, ...]:
     notes = list(analysis.notes)
-    if any(scene.settled.configurations != scene.structure.configurations for scene in scenes(analysis)):
+    drawn = any(finding.product_smiles and "@" in finding.product_smiles for finding in findings)
+    if drawn and any(scene.settled.configurations != scene.structure.configurations for scene in scenes(analysis)):
         notes.append("A centre without configuration becomes one in the product: relative configuration is written.")
     if analysis.medium == "protic" or analysis.conditions.medium == "protic":
         notes.append("Amines and acids may be ionised in this medium.")

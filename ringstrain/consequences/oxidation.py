@@ -16,7 +16,8 @@ from ringstrain.consequences.scene import Scene, has_boat, numbers
 from ringstrain.errors import UsageError
 
 CAUTION = (
-    "Cr(VI) is a carcinogen and a strong oxidiser: keep acetone and ether away, segregate waste. Hypervalent iodine can "
+    "Cr(VI) is a carcinogen and a strong oxidiser: keep acetone and ether away, segregate waste. Hypervalent "
+    "iodine can "
     "explode. Follow local rules and ask a qualified colleague."
 )
 REAGENTS = ("chromic acid", "hypervalent")

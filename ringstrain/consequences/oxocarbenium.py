@@ -13,7 +13,8 @@ from ringstrain.consequences.request import Request
 from ringstrain.consequences.scene import Scene, numbers
 from ringstrain.structure.edit import Draft
 
-CAUTION = "Lewis acids fume and burn; allylsilanes and stannanes are flammable or toxic. Follow local rules and ask a qualified colleague."
+CAUTION = "Lewis acids fume and burn; allylsilanes and stannanes are flammable or toxic. Follow local rules and "
+"ask a qualified colleague."
 
 
 def attack(scene: Scene, request: Request, carbon: int, oxygen: int, leaving: int) -> list[Option]:
@@ -60,9 +61,11 @@ def attack(scene: Scene, request: Request, carbon: int, oxygen: int, leaving: in
         set_face(draft, scene, carbon, ring, new, others[0], face)
         state = scene.states[0]
         reason = (
-            f"The half-chair ion that has group {numbers(*voters)} where its kind prefers is attacked axially at C {carbon + 1}."
+            f"The half-chair ion that has group {numbers(*voters)} where its kind prefers is attacked axially at C "
+            f"{carbon + 1}."
             if votes
-            else f"No group at C3 or C4 of the ion decides between its half-chairs; C {carbon + 1} is attacked axially in both."
+            else f"No group at C3 or C4 of the ion decides between its half-chairs; C {carbon + 1} is attacked "
+            "axially in both."
         )
         finding = Finding(
             reaction="solvolysis",
@@ -79,7 +82,8 @@ def attack(scene: Scene, request: Request, carbon: int, oxygen: int, leaving: in
             reason=reason,
             confidence="direction only",
             limits=(
-                "(limit) With fast nucleophiles the selectivity is lost at the diffusion limit; the configuration of the "
+                "(limit) With fast nucleophiles the selectivity is lost at the diffusion limit; the configuration "
+                "of the "
                 "starting acetal does not matter.",
             ),
             cautions=(CAUTION,),

@@ -75,14 +75,10 @@ def turn(draft: Draft, atom: int) -> None:
     own = draft.configuration(atom)
     if own is not None:
         order = own.neighbours
-        draft.configure(
-            atom, (int(order[0]), int(order[1]), int(order[2]), int(order[3])), clockwise=not own.clockwise
-        )
+        draft.configure(atom, (int(order[0]), int(order[1]), int(order[2]), int(order[3])), clockwise=not own.clockwise)
 
 
-def opened_epoxide(
-    scene: Scene, attacked: int, kept: int, oxygen: int, entering: Structure | None
-) -> str:
+def opened_epoxide(scene: Scene, attacked: int, kept: int, oxygen: int, entering: Structure | None) -> str:
     """SMILES of the trans product of an epoxide opened at one carbon; ``entering`` None stands for hydride."""
     draft = Draft(scene.settled)
     at, stays = draft.configuration(attacked), draft.configuration(kept)
@@ -103,9 +99,7 @@ def opened_epoxide(
     return draft.smiles(keep=kept)
 
 
-def added_pair(
-    scene: Scene, first: tuple[int, int, Structure], second: tuple[int, int, Structure]
-) -> str:
+def added_pair(scene: Scene, first: tuple[int, int, Structure], second: tuple[int, int, Structure]) -> str:
     """SMILES after two groups add to a ring double bond: (carbon, face, group) each."""
     draft = Draft(scene.settled)
     draft.bond(first[0], second[0], 1)

@@ -22,9 +22,7 @@ from ringstrain.structure.records import Structure
 CAUTION_HYDRIDE = (
     "Hydrides evolve hydrogen and can ignite on quenching. Follow local rules and ask a qualified colleague."
 )
-CAUTION_CARBON = (
-    "Organolithiums are pyrophoric, HCN is lethal. Follow local rules and ask a qualified colleague."
-)
+CAUTION_CARBON = "Organolithiums are pyrophoric, HCN is lethal. Follow local rules and ask a qualified colleague."
 #: Reagent classes of this question, the usual one first.
 REAGENTS = (
     "small hydride",
@@ -40,7 +38,7 @@ REAGENTS = (
     "iridium",
     "electrode",
 )
-_PRODUCT_STABILITY = ("cyanide", "dissolving metal", "equilibrating", "bulky alkoxide")
+_PRODUCT_STABILITY = ("dissolving metal", "equilibrating", "bulky alkoxide")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -140,7 +138,9 @@ def _faces(scene: Scene, request: Request, reagent: str, carbon: int, oxygen: in
                 )
             )
     if has_boat(scene.states[0]):
-        out = [_warned(o, "(limit) The chairs of this ketone are too strained: it reacts from a twist-boat.") for o in out]
+        out = [
+            _warned(o, "(limit) The chairs of this ketone are too strained: it reacts from a twist-boat.") for o in out
+        ]
     return out
 
 
@@ -155,7 +155,7 @@ def _is_minor(chance: _Chance, axial: bool) -> bool:
 
 def _is_favoured(reagent: str, *, axial: bool) -> bool:
     """The attack named by a rule that knows a direction only."""
-    return axial == (reagent != "sulfoxonium ylide")
+    return axial == (reagent not in ("sulfoxonium ylide", "cyanide"))
 
 
 def _weight(
@@ -192,6 +192,7 @@ def _base_rule(reagent: str, entering: Structure | None) -> Rule:
         "thin carbon": "reduction-thin-carbon",
         "sulfoxonium ylide": "reduction-ylide",
         "sulfonium ylide": "reduction-sulfonium",
+        "cyanide": "reduction-cyanide",
         "iridium": "reduction-iridium",
         "electrode": "reduction-electrode",
     }
@@ -206,9 +207,7 @@ def _base_rule(reagent: str, entering: Structure | None) -> Rule:
     return rule(names.get(reagent, "reduction-small-hydride"))
 
 
-def _chance(
-    scene: Scene, state: State, reagent: str, entering: Structure | None, carbon: int, ring: int
-) -> _Chance:
+def _chance(scene: Scene, state: State, reagent: str, entering: Structure | None, carbon: int, ring: int) -> _Chance:
     """Part of axial attack after the modifiers, the first that applies deciding."""
     base = _base_rule(reagent, entering)
     limits = _limits(scene, carbon, ring, reagent)
@@ -219,7 +218,7 @@ def _chance(
     axial_beside = [n for n, where in beside if where == "axial"]
     level_beside = [n for n, where in beside if where == "equatorial"]
     modified = True
-    if blockers and reagent not in (*_PRODUCT_STABILITY, "iridium", "electrode"):
+    if blockers and reagent not in (*_PRODUCT_STABILITY, "cyanide", "iridium", "electrode"):
         why = f"axial group {numbers(*blockers)} stands on the face of axial attack"
         name = "small" if reagent == "small hydride" else "bulky" if reagent == "bulky hydride" else "carbon"
         used = rule(f"reduction-{name}-blocked")
@@ -280,7 +279,8 @@ def _limits(scene: Scene, carbon: int, ring: int, reagent: str) -> tuple[str, ..
     groups = {a: scene.outer(a) for a in near}
     if all(groups.values()):
         found.append(
-            "(limit) Both alpha carbons carry groups: in alcohols the usual side can reverse, and the ketone epimerises."
+            "(limit) Both alpha carbons carry groups: in alcohols the usual side can reverse, and the ketone "
+            "epimerises."
         )
     elif any(groups[a] and structure.atoms[a].hydrogens for a in near):
         found.append("The alpha centre can epimerise under basic conditions.")
@@ -289,6 +289,8 @@ def _limits(scene: Scene, carbon: int, ring: int, reagent: str) -> tuple[str, ..
         found.append(f"(limit) Group {numbers(*hetero)} can chelate a Lewis-acidic metal and turn the attack round.")
     if any(structure.atoms[a].number != 6 for a in atoms):
         found.append("(limit) Heteroatom in the ring: measured selectivities are for cyclohexanones.")
+    if reagent == "cyanide":
+        found.append("Reversible: the published direction is given; additive energies of OH and CN can say otherwise.")
     if reagent in _PRODUCT_STABILITY:
         found.append("Product stability decides; larger groups on oxygen raise the ceiling.")
     return tuple(found)

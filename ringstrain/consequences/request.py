@@ -67,8 +67,6 @@ class Request:
     electrophile: str = ""
 
     def __post_init__(self) -> None:
-        if self.base not in (None, "small", "bulky"):
-            raise UsageError(f"No base is called {self.base!r}.", "Use small or bulky.")
         if self.reagent and self.reagent not in REAGENTS:
             raise UsageError(f"No reagent class is called {self.reagent!r}.", f"Use one of {', '.join(REAGENTS)}.")
 
@@ -122,3 +120,25 @@ def read_part(text: str, option: str) -> Structure:
     if not part.atoms or len(part.fragment) != len(part.atoms):
         raise UsageError(f"{option} {text!r} has several parts.", "Leave counter-ions out.")
     return part
+
+
+def make_request(*, nucleophile: str = "", base: str = "", reagent: str = "", electrophile: str = "") -> Request:
+    """Reagents from words, checked and read at once.
+
+    Raises
+    ------
+    UsageError
+        If one is unknown or cannot be read.
+    """
+    size: Base | None = None
+    for known in get_args(Base):
+        if base == known:
+            size = known
+    if base and size is None:
+        raise UsageError(f"No base is called {base!r}.", "Use small or bulky.")
+    request = Request(nucleophile=nucleophile, base=size, reagent=reagent, electrophile=electrophile)
+    if nucleophile and not request.is_hydride:
+        request.part_or(nucleophile)
+    if electrophile and electrophile.strip("[]+-") not in ("H", "HH"):
+        request.electrophile_or(electrophile)
+    return request

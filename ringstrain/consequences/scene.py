@@ -155,9 +155,7 @@ class Scene:
         """Atoms on a ring atom that belong to no ring of the system, isotopic hydrogen left out."""
         members = self.result.system.atom_set
         return tuple(
-            int(n)
-            for n in self.structure.neighbours[atom]
-            if n not in members and self.structure.atoms[n].number != 1
+            int(n) for n in self.structure.neighbours[atom] if n not in members and self.structure.atoms[n].number != 1
         )
 
     def sites(self, atom: int) -> Iterator[Site]:
@@ -198,9 +196,7 @@ class Scene:
     def position(self, state: State, atom: int, neighbour: int) -> Place:
         """Where a neighbour points; axial to any of its rings counts as axial."""
         found = [
-            p.position
-            for p in state.detail.facts.placed
-            if p.site.neighbour == neighbour and p.site.ring_atom == atom
+            p.position for p in state.detail.facts.placed if p.site.neighbour == neighbour and p.site.ring_atom == atom
         ]
         if "axial" in found:
             return "axial"

@@ -35,9 +35,7 @@ def options(scene: Scene, request: Request) -> list[Option]:
     """
     structure = scene.structure
     found: list[Option] = []
-    leavers: list[tuple[int, int, str]] = [
-        (g.carbon, g.atom, g.name) for g in leaving_groups(scene, outside=False)
-    ]
+    leavers: list[tuple[int, int, str]] = [(g.carbon, g.atom, g.name) for g in leaving_groups(scene, outside=False)]
     for atom in scene.ring_atoms:
         for x in scene.outer(atom) if scene.is_tetrahedral(atom) else ():
             record = structure.atoms[x]
@@ -52,9 +50,7 @@ def options(scene: Scene, request: Request) -> list[Option]:
     return found
 
 
-def _moves(
-    scene: Scene, state: State, i: int, leaving: int, name: str, carbon: int, oxygen: int
-) -> list[Option]:
+def _moves(scene: Scene, state: State, i: int, leaving: int, name: str, carbon: int, oxygen: int) -> list[Option]:
     """The bond anti to the leaving group in a state, and what follows."""
     structure = scene.structure
     candidates = [int(n) for n in structure.neighbours[carbon] if n != i]
@@ -67,7 +63,11 @@ def _moves(
         if y == oxygen:
             product, pathway, what = closed_epoxide(scene, carbon, oxygen, i, leaving), "epoxide", f"O {oxygen + 1}"
         elif y < 0 or structure.atoms[y].number == 1:
-            product, pathway, what = _shifted_hydrogen(scene, i, leaving, carbon, oxygen, y), "1,2-hydride shift to the ketone", "H"
+            product, pathway, what = (
+                _shifted_hydrogen(scene, i, leaving, carbon, oxygen, y),
+                "1,2-hydride shift to the ketone",
+                "H",
+            )
         elif y in scene.ring_neighbours(carbon):
             product, what = _migrated(scene, i, leaving, carbon, oxygen, y), f"ring bond {carbon + 1}-{y + 1}"
             pathway = "ring contraction"
@@ -77,7 +77,9 @@ def _moves(
         nitrogen = "N2" in name or name == "dinitrogen"
         limits = ["Textbook ideal: measured mixtures are less clean."]
         if nitrogen:
-            limits.append("Nitrogen leaves before the ring flips: shares are ground-state populations, not Curtin-Hammett.")
+            limits.append(
+                "Nitrogen leaves before the ring flips: shares are ground-state populations, not Curtin-Hammett."
+            )
         else:
             limits.append("(limit) A slower leaving group lets the ring flip: populations alone do not set the ratio.")
         finding = Finding(

@@ -7,6 +7,7 @@ from dataclasses import replace
 from ringstrain.analysis import State
 from ringstrain.consequences.finding import Finding, Option
 from ringstrain.consequences.functional import Leaving, is_hydroxyl, leaving_groups, syn_leaving
+from ringstrain.consequences.oxocarbenium import attack
 from ringstrain.consequences.products import displaced
 from ringstrain.consequences.request import Request
 from ringstrain.consequences.rulebook import Rule, rule
@@ -31,11 +32,12 @@ def options(scene: Scene, request: Request) -> list[Option]:
     found: list[Option] = []
     for leaving in leaving_groups(scene, outside=False):
         states = [s for s in scene.states if not has_boat(s)] or list(scene.states)
-        helped = [o for s in states for o in _by_lone_pair(scene, request, leaving, s)]
-        found.extend(helped)
+        captured = _by_hydroxymethyl(scene, request, leaving, states)
+        found.extend(captured)
+        found.extend(o for s in states for o in _by_lone_pair(scene, request, leaving, s))
         for state in states:
-            found.extend(_by_hydride(scene, request, leaving, state))
-            found.append(_alone(scene, request, leaving, state))
+            for option in (*_by_hydride(scene, request, leaving, state), _alone(scene, request, leaving, state)):
+                found.append(replace(option, weight=None) if captured else option)
     found.extend(_acetals(scene, request))
     return found
 
@@ -96,7 +98,8 @@ def _alone(scene: Scene, request: Request, leaving: Leaving, state: State) -> Op
         partner_atoms=(leaving.carbon,),
         product_smiles=displaced(scene, leaving.carbon, leaving.atom, entering, invert=True),
         pathway="unassisted ionisation, mostly inversion",
-        reason=f"State {state.id}: {scene.describe(state, leaving.carbon, leaving.atom)} ({leaving.name}) leaves without help.",
+        reason=f"State {state.id}: {scene.describe(state, leaving.carbon, leaving.atom)} ({leaving.name}) leaves "
+        "without help.",
         sources=sources or ("winstein-holness-1955",),
     )
     weight = scene.shares[state.id] * rate
@@ -182,7 +185,8 @@ def _by_lone_pair(scene: Scene, request: Request, leaving: Leaving, state: State
                 partner_atoms=(x,),
                 product_smiles=displaced(scene, carbon, leaving.atom, request.part_or("O"), invert=False),
                 pathway=f"participation of the {kind}: bridged ion, net retention",
-                reason=f"State {state.id}: {scene.describe(state, n, x)} and {scene.describe(state, carbon, leaving.atom)} are "
+                reason=f"State {state.id}: {scene.describe(state, n, x)} and "
+                f"{scene.describe(state, carbon, leaving.atom)} are "
                 "trans-diaxial.",
                 limits=limits + _base(scene, leaving, state, request).limits,
                 confidence="order of magnitude" if kind == "acyloxy group" else "direction only",
@@ -200,8 +204,11 @@ def _by_lone_pair(scene: Scene, request: Request, leaving: Leaving, state: State
         methoxy = [
             x
             for x in (scene.outer(n) if scene.is_tetrahedral(n) else ())
-            if structure.atoms[x].number == 8 and not is_hydroxyl(structure, x) and not _donor(scene, x, n)
-            and x != leaving.atom and syn_leaving(structure, n, x) is None
+            if structure.atoms[x].number == 8
+            and not is_hydroxyl(structure, x)
+            and not _donor(scene, x, n)
+            and x != leaving.atom
+            and syn_leaving(structure, n, x) is None
         ]
         if methoxy and scene.is_anti(state, methoxy[0], n, carbon, leaving.atom):
             finding = replace(
@@ -209,11 +216,37 @@ def _by_lone_pair(scene: Scene, request: Request, leaving: Leaving, state: State
                 verdict="locked out",
                 partner_atoms=(methoxy[0],),
                 pathway="no clear participation of an ether oxygen",
-                reason=f"O {numbers(methoxy[0])} can stand anti to the leaving group but an alkoxy group hardly helps; it retards.",
+                reason=f"O {numbers(methoxy[0])} can stand anti to the leaving group but an alkoxy group hardly "
+                "helps; it retards.",
                 confidence="direction only",
                 sources=("roberts-1997",),
             )
             found.append(Option(finding=finding))
+    return found
+
+
+def _by_hydroxymethyl(scene: Scene, request: Request, leaving: Leaving, states: list[State]) -> list[Option]:
+    """A CH2OH trans to the leaving group: complete retention was found; no number tells how much faster."""
+    structure, carbon = scene.structure, leaving.carbon
+    found: list[Option] = []
+    for n in scene.ring_neighbours(carbon):
+        for x in scene.outer(n) if scene.is_tetrahedral(n) else ():
+            arms = [int(y) for y in structure.neighbours[x] if is_hydroxyl(structure, int(y))]
+            if structure.atoms[x].hydrogens != 2 or not arms or scene.same_face(n, x, carbon, leaving.atom):
+                continue
+            for state in states:
+                finding = replace(
+                    _base(scene, leaving, state, request),
+                    partner_atoms=(arms[0],),
+                    product_smiles=displaced(scene, carbon, leaving.atom, request.part_or("O"), invert=False),
+                    pathway="participation of the hydroxymethyl oxygen: net retention",
+                    reason=f"O {arms[0] + 1} of the trans CH2OH on C {n + 1} captures C {carbon + 1} from behind, "
+                    "or holds the "
+                    "ion pair.",
+                    confidence="direction only",
+                    sources=("dolby-et-al-1968",),
+                )
+                found.append(Option(finding=finding, weight=scene.shares[state.id], sigma_ln=scene.sigma_ln(state)))
     return found
 
 
@@ -233,8 +266,4 @@ def _acetals(scene: Scene, request: Request) -> list[Option]:
 
 def _oxocarbenium(scene: Scene, request: Request, carbon: int, oxygen: int, leaving: int) -> list[Option]:
     """Axial attack on both half-chairs of the ion, alkoxy groups at C3 and C4 of the ion pseudoaxial."""
-    from ringstrain.consequences.oxocarbenium import attack
-
     return attack(scene, request, carbon, oxygen, leaving)
-
-

@@ -49,15 +49,20 @@ def _of_state(scene: Scene, request: Request, leaving: Leaving, state: State) ->
         ring = scene.result.system.rings_of[carbon][0]
         axial = scene.position(state, carbon, leaving.atom) == "axial"
         if axial:
-            why = f"{scene.describe(state, carbon, leaving.atom)}: the nucleophile comes in from the open equatorial side"
+            why = (
+                f"{scene.describe(state, carbon, leaving.atom)}: the nucleophile comes in from the open equatorial side"
+            )
             weight, sigma = scene.shares[state.id] * factor.number, factor.sigma_ln
             limits.append("E2 competes when a base finds the anti hydrogens beside an axial leaving group.")
         else:
-            why = f"{scene.describe(state, carbon, leaving.atom)}: the back is the axial side, with syn-axial hydrogens in the way"
+            why = f"{scene.describe(state, carbon, leaving.atom)}: the back is the axial side, with syn-axial "
+            "hydrogens in the way"
             face = -scene.face(carbon, leaving.atom, ring)
             blockers = scene.syn_axial(state, carbon, face, ring)
             if blockers:
-                why = f"the back of {leaving.name} {leaving.atom + 1} is blocked by syn-axial group {numbers(*blockers)}"
+                why = (
+                    f"the back of {leaving.name} {leaving.atom + 1} is blocked by syn-axial group {numbers(*blockers)}"
+                )
                 limits.append("(limit) A syn-axial group stands on the attack face: very slow.")
     crowded = structure.atoms[carbon].hydrogens == 0 and not any(
         structure.atoms[n].number == 1 for n in structure.neighbours[carbon]

@@ -19,7 +19,8 @@ from ringstrain.consequences.scene import Scene, has_boat
 from ringstrain.structure.edit import cut_branch
 
 CAUTION = (
-    "Amine oxides can decompose violently when heated dry; selenium compounds and CS2 are toxic. Follow local rules and "
+    "Amine oxides can decompose violently when heated dry; selenium compounds and CS2 are toxic. Follow local "
+    "rules and "
     "ask a qualified colleague."
 )
 _STRICT = ("amine oxide", "sulfoxide", "selenoxide")
@@ -100,7 +101,8 @@ def _of_group(scene: Scene, atom: int, x: int, kind: SynKind) -> list[Option]:
             partner_atoms=(n,),
             product_smiles=alkene(scene, ((atom, x), (n, h)), (atom, n)),
             pathway="syn elimination",
-            reason=f"In state {state.id} {where} ({kind}) and {partner} stand on one face (torsion {torsion:.0f} degrees, "
+            reason=f"In state {state.id} {where} ({kind}) and {partner} stand on one face (torsion {torsion:.0f} "
+            "degrees, "
             "closing to 0).",
             confidence="order of magnitude" if kind == "amine oxide" else "direction only",
             limits=limits,
@@ -109,7 +111,10 @@ def _of_group(scene: Scene, atom: int, x: int, kind: SynKind) -> list[Option]:
         )
         found.append(
             Option(
-                finding=finding, weight=weight, sigma_ln=scene.sigma_ln(state, hofmann.sigma_ln * branched[n]), centres=(atom,)
+                finding=finding,
+                weight=weight,
+                sigma_ln=scene.sigma_ln(state, hofmann.sigma_ln * branched[n]),
+                centres=(atom,),
             )
         )
     return found

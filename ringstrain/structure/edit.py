@@ -246,7 +246,7 @@ class Draft:
             if ends is not None and bond.begin != a:
                 ends = (ends[1], ends[0])
             bonds.append(Bond(begin, end, bond.order, bond.aromatic, word, ends))
-        configurations = []
+        configurations: list[Configuration | None] = []
         for old in alive:
             own = self._configurations[old]
             named = {int(n) for n in own.neighbours if n >= 0} if own is not None else set()
@@ -288,11 +288,43 @@ def _settled(raw: Structure) -> Structure:
 def _real_centres(mol: Any) -> frozenset[int]:
     """Atoms whose configuration distinguishes stereoisomers, dependent ring centres included."""
     found = Chem.FindPotentialStereo(Chem.Mol(mol), cleanIt=False, flagPossible=False)
-    return frozenset(
+    real = {
         info.centeredOn
         for info in found
         if info.type == Chem.StereoType.Atom_Tetrahedral and info.specified == Chem.StereoSpecified.Specified
-    )
+    }
+    for pair in _bridgeheads(mol):
+        if pair <= real and _is_idle_pair(mol, pair, real):
+            real -= pair
+    return frozenset(real)
+
+
+def _bridgeheads(mol: Any) -> list[frozenset[int]]:
+    """Pairs of atoms from which a bridge spans a ring."""
+    rings = [frozenset(ring) for ring in mol.GetRingInfo().AtomRings()]
+    found = []
+    for i, first in enumerate(rings):
+        for second in rings[:i]:
+            shared = first & second
+            ends = [a for a in shared if sum(n.GetIdx() in shared for n in mol.GetAtomWithIdx(a).GetNeighbors()) == 1]
+            if len(shared) > 2 and len(ends) == 2:
+                found.append(frozenset(ends))
+    return found
+
+
+def _is_idle_pair(mol: Any, pair: frozenset[int], real: set[int]) -> bool:
+    """True when turning both bridgeheads round (one alone cannot exist) gives the same molecule."""
+    texts: list[str] = []
+    for turned in (False, True):
+        copy = Chem.Mol(mol)
+        for atom in copy.GetAtoms():
+            if atom.GetIdx() not in real:
+                atom.SetChiralTag(Chem.ChiralType.CHI_UNSPECIFIED)
+            elif turned and atom.GetIdx() in pair:
+                atom.InvertChirality()
+        copy.SetIntProp("_StereochemDone", 1)
+        texts.append(Chem.MolToSmiles(Chem.MolFromSmiles(Chem.MolToSmiles(copy))))
+    return texts[0] == texts[1]
 
 
 def tidy_smiles(structure: Structure) -> str:
