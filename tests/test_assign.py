@@ -51,6 +51,14 @@ def test_observations_that_make_no_sense_are_refused(text: str) -> None:
     assert caught.value.next_step
 
 
+@pytest.mark.parametrize(("width", "right"), [("W 30", TRANS), ("W=11", CIS)])
+def test_a_width_alone_tells_axial_from_equatorial(width: str, right: str) -> None:
+    """About 30 Hz for an axial carbinol hydrogen, about 12 Hz for an equatorial one (common practice, no source)."""
+    answer = assign(read(TBU), parse_observed(f"H8={width}"))
+    assert answer.candidates[0].smiles == read(right).smiles
+    assert answer.verdict == "decided"
+
+
 def test_the_best_matching_of_couplings_is_found() -> None:
     """The order in which couplings are given does not matter, and each observed one is used."""
     signal = predict_nmr(analyze(TRANS)).signal("H8ax")

@@ -237,12 +237,27 @@ def test_flat_neighbours_double_the_error() -> None:
     assert beside.uncertainty_Hz == pytest.approx(1.0 if beside.doubled else 0.5)
 
 
+def test_an_amide_nitrogen_in_the_ring_doubles_the_error_one_in_a_side_chain_does_not() -> None:
+    inside = spectrum("CC(=O)N1CCCCC1C")
+    assert all(c.doubled for c in inside.signal("H5eq").couplings)
+    outside = spectrum("CC(=O)N[C@@H]1CCCC[C@H]1O")
+    assert not any(c.doubled for s in outside.signals for c in s.couplings)
+
+
 def test_an_unpriced_contact_leaves_couplings_per_form_only() -> None:
     found = spectrum("1b-OH 2a-NO2 4a-CN")
     coupling = next(c for s in found.signals for c in s.couplings)
     assert coupling.average_Hz is None
     assert all(value is not None for _, value in coupling.per_state)
     assert any("without a price" in note for note in found.notes)
+
+
+def test_a_high_state_with_an_unpriced_contact_does_not_spoil_the_averages() -> None:
+    """The diequatorial chair is over 4 kcal/mol below the twist-boat with the unpriced contact: under 0.1 %."""
+    found = spectrum("O=C1CC[C@@H](C)C[C@H]1C")
+    assert any(s.lower_bound for s in found.analysis.ring_systems[0].states)
+    assert all(c.average_Hz is not None for s in found.signals for c in s.couplings)
+    assert sum(found.shares[0] or ()) == pytest.approx(1.0)
 
 
 def test_an_element_without_electronegativity_gives_no_number() -> None:
@@ -314,10 +329,28 @@ def test_shifts_take_model_values(capsys: Capture) -> None:
     assert estimate["share"] == pytest.approx(0.804, abs=0.001)
 
 
+def test_a_width_gives_populations_too(capsys: Capture) -> None:
+    """x = (W - W eq)/(W ax - W eq) with the widths worked out from the equation, 32.2 and 12.0 Hz for X = OH."""
+    found = document(capsys, "OC1CCCCC1", "--observed-average", "W(H2)=28")
+    (estimate,) = found["populations_from_averages"]
+    assert estimate["model_values"] == [pytest.approx(32.2, abs=0.06), pytest.approx(12.0, abs=0.06)]
+    assert estimate["share"] == pytest.approx((28 - 12.0) / (32.2 - 12.0), abs=0.005)
+    # four couplings of 0.5 Hz each
+    assert estimate["model_uncertainties"] == [pytest.approx(1.0)] * 2
+
+
+def test_a_coupling_between_alike_hydrogens_is_never_used(capsys: Capture) -> None:
+    assert run(["nmr", "Cl[C@@H]1CCCC[C@H]1Cl", "--observed-average", "H2-H7=7"]) == 2
+    assert "alike" in capsys.readouterr().err
+
+
 @pytest.mark.parametrize(
     "arguments",
     [
         ["OC1CCCCC1", "--observed-average", "H2=3.62"],
+        ["OC1CCCCC1", "--observed-average", "W(H3)=20"],
+        ["OC1CCCCC1", "--observed-average", "W(H2-H3)=20"],
+        ["OC1CCCCC1", "--observed-average", "7.1"],
         ["OC1CCCCC1", "--observed-average", "nonsense"],
         ["OC1CCCCC1", "--observed-average", "H2-H9=3"],
         ["OC1CCCCC1", "--observed-average", "H2-H4=3"],

@@ -37,7 +37,8 @@ def assign(
         typer.Option(
             "--observed",
             metavar="TEXT",
-            help="Couplings in Hz: 'H1=10.8,4.2; H4=3.1', with a word if you like: 'H1=td 10.8,4.2', 'H4=br s'.",
+            help="Couplings in Hz: 'H1=10.8,4.2; H4=3.1', with a word if you like: 'H1=td 10.8,4.2', 'H4=br s', or the "
+            "width of the outer lines: 'H1=W 30'.",
             show_default=False,
         ),
     ] = None,

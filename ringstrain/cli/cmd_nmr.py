@@ -42,7 +42,8 @@ def nmr(
         typer.Option(
             "--observed-average",
             metavar="TEXT",
-            help="Populations from a spectrum: 'H1-H2=7.1' in Hz, 'H1=3.70' in ppm with --models; several with ';'.",
+            help="Populations from a spectrum: 'H1-H2=7.1' or a width 'W(H1)=22' in Hz, 'H1=3.70' in ppm with "
+            "--models; several with ';'.",
             show_default=False,
         ),
     ] = None,

@@ -144,7 +144,13 @@ class Assignment:
             "temperature_K": self.temperature_K,
             "medium": self.medium,
             "observed": [
-                {"name": o.name, "atom": o.atom, "couplings_Hz": list(o.couplings_Hz), "narrow": o.is_narrow}
+                {
+                    "name": o.name,
+                    "atom": o.atom,
+                    "couplings_Hz": list(o.couplings_Hz),
+                    "narrow": o.is_narrow,
+                    "width_Hz": o.width_Hz,
+                }
                 for o in self.observations
             ],
             "verdict": self.verdict,

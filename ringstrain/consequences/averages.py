@@ -6,10 +6,14 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from ringstrain.equilibrium import Variables, differing_lines, variables_of
+from ringstrain.equilibrium import Variables, differing_lines, variables_of, weights
 from ringstrain.ledger import regime_of
 from ringstrain.results import State, SystemResult
 from ringstrain.units import R_KCAL
+
+#: Share up to which states of unknown energy may be left out of averages [-].
+NEGLIGIBLE = 0.01
+_POLAR = "polar"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -100,17 +104,56 @@ def make_ensemble(result: SystemResult, temperature_K: float, model_terms: dict[
             regime = regime_of(differing_lines(reference, state.detail.ledger))
             own[("model", str(form))] = (1.0, model_terms.get(regime, 0.0))
         variables.append(own)
-    shares: tuple[float, ...] | None = None
-    populations = [state.population for state in result.states]
-    if all(p is not None for p in populations):
-        shares = tuple(p for p in populations if p is not None)
     return Ensemble(
         ids=tuple(state.id for state in result.states),
-        shares=shares,
+        shares=shares_of(result, temperature_K),
         temperature_K=temperature_K,
         forms=forms,
         _variables=tuple(variables),
     )
+
+
+def shares_of(result: SystemResult, temperature_K: float) -> tuple[float, ...] | None:
+    """Populations of the states, or None when an unpriced contact decides them.
+
+    Parameters
+    ----------
+    result
+        The ring system.
+    temperature_K
+        Temperature [K].
+
+    Returns
+    -------
+    tuple or None
+        In the order of the states.  A state whose unpriced contacts can only raise it counts as empty when its known
+        part alone keeps it, with all others of the kind, below :data:`NEGLIGIBLE`.
+    """
+    known = [state.population for state in result.states]
+    if all(p is not None for p in known):
+        return tuple(p for p in known if p is not None)
+    tallies = [_unknown(state) for state in result.states]
+    beyond = [tally != tallies[0] for tally in tallies]
+    if any(tally.pop(_POLAR, 0.0) for tally, far in zip(tallies, beyond, strict=True) if far):
+        return None
+    if any(tally.get(key, 0.0) < count for tally in tallies for key, count in tallies[0].items()):
+        return None
+    shares = weights([state.energy_kcal for state in result.states], temperature_K)
+    if math.fsum(p for p, far in zip(shares, beyond, strict=True) if far) > NEGLIGIBLE:
+        return None
+    total = math.fsum(p for p, far in zip(shares, beyond, strict=True) if not far)
+    return tuple(0.0 if far else p / total for p, far in zip(shares, beyond, strict=True))
+
+
+def _unknown(state: State) -> dict[object, float]:
+    """How often each unpriced line counts in a state; an entry of its own when one is polar and may lower it."""
+    tally: dict[object, float] = {}
+    for line in state.lines:
+        if line.value_kcal is None:
+            tally[line.key] = tally.get(line.key, 0.0) + line.count
+            if line.polar:
+                tally[_POLAR] = 1.0
+    return tally
 
 
 def ring_forms(result: SystemResult) -> tuple[int, ...]:

@@ -19,6 +19,7 @@ _FURTHER_NAMES = {
     "Se-C-C-C-C-C": "selenane",
     "NR-C-C-NR-C-C": "N,N'-dimethylpiperazine",
     "tetralin": "cyclohexene",
+    "1,1-difluorocyclohexane": "cyclohexane",
 }
 
 

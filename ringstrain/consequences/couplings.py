@@ -11,6 +11,7 @@ from ringstrain.consequences.karplus import Substituent, choose_set, electronega
 from ringstrain.contacts import position_of
 from ringstrain.geometry import ANTI, Geometry, Site, wrap
 from ringstrain.results import State, SystemResult
+from ringstrain.ringgraph import atom_kind
 from ringstrain.structure.records import Structure
 from ringstrain.tables.spectra import SpectralTables
 
@@ -130,13 +131,19 @@ def has_flat_neighbour(structure: Structure, b: int, c: int) -> bool:
                 continue
             record = structure.atoms[n]
             double = any(structure.bond(n, m).order == 2 for m in structure.neighbours[n])
-            if record.number in (6, 7) and (record.aromatic or double):
+            if record.number in (6, 7) and (record.aromatic or double or _is_flat_in_ring(structure, carbon, int(n))):
                 return True
             if n in structure.neighbours[other]:
                 return True
             if any(m != carbon and m in structure.neighbours[carbon] for m in structure.neighbours[n]):
                 return True
     return False
+
+
+def _is_flat_in_ring(structure: Structure, carbon: int, atom: int) -> bool:
+    """True for an amide nitrogen and the like that shares a ring with the carbon; one in a side chain does no harm."""
+    shared = any(carbon in ring and atom in ring for ring in structure.rings)
+    return shared and atom_kind(structure, atom) == "sp2"
 
 
 def _largest_first(coupling: Coupling) -> tuple[float, str]:

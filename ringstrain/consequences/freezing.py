@@ -10,7 +10,7 @@ import math
 from dataclasses import dataclass, replace
 
 from ringstrain.analysis import analyze
-from ringstrain.consequences.averages import ring_forms
+from ringstrain.consequences.averages import ring_forms, shares_of
 from ringstrain.consequences.barriers import Barrier, find_barrier
 from ringstrain.consequences.dynamics import coalescence_rate, eyring_rate, solve, unequal_coalescence_rates
 from ringstrain.results import Analysis, State, SystemResult
@@ -182,7 +182,7 @@ def find_freezing(
             continue
         if cold is None:
             cold = analyze(analysis.structure, temperature_K=cold_K, medium=analysis.medium, tables=tables)
-        frozen = _frozen_forms(cold.ring_systems[number], spectra)
+        frozen = _frozen_forms(cold.ring_systems[number], cold_K, spectra)
         found.append(_freeze(number, result, partner, analysis, frozen, tables, spectra, spectrometer))
     return tuple(found)
 
@@ -200,27 +200,23 @@ def flip_partner(result: SystemResult) -> State | None:
     return None
 
 
-def _frozen_forms(result: SystemResult, spectra: SpectralTables) -> tuple[FrozenForm, ...]:
+def _frozen_forms(result: SystemResult, cold_K: float, spectra: SpectralTables) -> tuple[FrozenForm, ...]:
     """Forms of the cold spectrum, largest first."""
     threshold = spectra.general("visible share").value
-    members: dict[int, list[State]] = {}
-    for state, form in zip(result.states, ring_forms(result), strict=True):
-        members.setdefault(form, []).append(state)
+    members: dict[int, list[int]] = {}
+    for number, form in enumerate(ring_forms(result)):
+        members.setdefault(form, []).append(number)
+    known = shares_of(result, cold_K)
     found = []
-    for states in members.values():
-        shares = [
-            (s.population, s.population_low, s.population_high)
-            for s in states
-            if s.population is not None and s.population_low is not None and s.population_high is not None
-        ]
-        known = len(shares) == len(states)
-        share, low, high = (
-            (min(1.0, math.fsum(column)) for column in zip(*shares, strict=True)) if known else (None,) * 3
-        )
+    for numbers in members.values():
+        first = result.states[numbers[0]]
+        share = None if known is None else min(1.0, math.fsum(known[i] for i in numbers))
+        limits = [(result.states[i].population_low, result.states[i].population_high) for i in numbers]
+        low, high = (_total(column) for column in zip(*limits, strict=True))
         found.append(
             FrozenForm(
-                state=states[0].id,
-                shapes=states[0].shapes,
+                state=first.id,
+                shapes=first.shapes,
                 share=share,
                 share_low=low,
                 share_high=high,
@@ -230,17 +226,24 @@ def _frozen_forms(result: SystemResult, spectra: SpectralTables) -> tuple[Frozen
     return tuple(form for form in found if form.share is None or form.share >= 1e-4 or form is found[0])
 
 
+def _total(limits: tuple[float | None, ...]) -> float | None:
+    """Sum of limits, at most 1; None when one is unknown."""
+    known = [limit for limit in limits if limit is not None]
+    return min(1.0, math.fsum(known)) if len(known) == len(limits) else None
+
+
 def _difference(result: SystemResult, partner: State, temperature_K: float) -> tuple[float | None, bool]:
     """Free energy of the flipped form above the favoured one [kcal/mol], and whether the two are alike."""
     forms = ring_forms(result)
     other = forms[result.states.index(partner)]
     if other == forms[0]:
         return 0.0, True
+    known = shares_of(result, temperature_K)
+    if known is None:
+        return None, False
     shares: dict[int, float] = {}
-    for state, form in zip(result.states, forms, strict=True):
-        if state.population is None:
-            return None, False
-        shares[form] = shares.get(form, 0.0) + state.population
+    for share, form in zip(known, forms, strict=True):
+        shares[form] = shares.get(form, 0.0) + share
     if shares[other] <= 0.0:
         return None, False
     return R_KCAL * temperature_K * math.log(shares[forms[0]] / shares[other]), False
@@ -309,8 +312,9 @@ def _critical_rate(bias_kcal: float, temperature_K: float, spectrometer: Spectro
     """Rate out of the favoured form at coalescence [1/s]."""
     if abs(bias_kcal) < 1e-9:
         return coalescence_rate(spectrometer.gap_Hz, spectrometer.coupling_Hz)
-    share = min(_share(bias_kcal, temperature_K), 1.0 - 1e-9)
-    return unequal_coalescence_rates(spectrometer.gap_Hz, max(share, 0.5))[0]
+    share = min(max(_share(bias_kcal, temperature_K), 1e-9), 1.0 - 1e-9)
+    out_of_major, out_of_minor = unequal_coalescence_rates(spectrometer.gap_Hz, max(share, 1.0 - share))
+    return out_of_major if share >= 0.5 else out_of_minor
 
 
 def _coalescence(barrier: Barrier, bias: float, shift: float, spectrometer: Spectrometer) -> float | None:

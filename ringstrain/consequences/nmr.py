@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
-from ringstrain.consequences.averages import make_ensemble
+from ringstrain.consequences.averages import make_ensemble, shares_of
 from ringstrain.consequences.couplings import EXCHANGES, Coupling, Unpredicted, find_couplings, find_unpredicted
 from ringstrain.consequences.freezing import FreezingOut, Spectrometer, find_freezing
 from ringstrain.consequences.hydrogens import Hydrogen, find_hydrogens
@@ -99,6 +99,9 @@ class Spectrum:
         13C shifts, one list for all ring systems.
     freezing
         How each ring system freezes out; None where it does not flip.
+    shares
+        Populations the averages rest on, one tuple for each ring system in the order of its states; None when an
+        unpriced contact decides them.
     notes
         What the reader should know.
     """
@@ -107,6 +110,7 @@ class Spectrum:
     signals: tuple[Signal, ...]
     carbons: tuple[CarbonShift, ...]
     freezing: tuple[FreezingOut | None, ...]
+    shares: tuple[tuple[float, ...] | None, ...]
     notes: tuple[str, ...]
 
     def signal(self, label: str) -> Signal:
@@ -144,11 +148,12 @@ class Spectrum:
                 {
                     "rings": [list(ring) for ring in result.rings],
                     "states": [
-                        {"id": s.id, "shapes": list(s.shapes), "population": s.population} for s in result.states
+                        {"id": s.id, "shapes": list(s.shapes), "population": p}
+                        for s, p in zip(result.states, shares or (None,) * len(result.states), strict=True)
                     ],
                     "locked": result.locked,
                 }
-                for result in analysis.ring_systems
+                for result, shares in zip(analysis.ring_systems, self.shares, strict=True)
             ],
             "hydrogens": [self._hydrogen(signal) for signal in self.signals],
             "carbons": [_carbon(shift) for shift in self.carbons],
@@ -245,6 +250,7 @@ def predict_nmr(
     rows = spectra if spectra is not None else load_spectra()
     watched = spectrometer if spectrometer is not None else usual_spectrometer(rows)
     signals = find_signals(analysis, prices, rows)
+    shares = tuple(shares_of(result, analysis.temperature_K) for result in analysis.ring_systems)
     carbons: list[CarbonShift] = []
     for result in analysis.ring_systems:
         ensemble = make_ensemble(result, analysis.temperature_K, prices.model_terms)
@@ -254,7 +260,8 @@ def predict_nmr(
         signals=signals,
         carbons=tuple(carbons),
         freezing=find_freezing(analysis, prices, rows, watched),
-        notes=(*CAVEATS, *_notes(analysis, signals)),
+        shares=shares,
+        notes=(*CAVEATS, *_notes(analysis, signals, shares)),
     )
 
 
@@ -334,12 +341,11 @@ def _gap(own: Hydrogen, mates: list[Hydrogen], analysis: Analysis, number: int, 
     """The hint for a CH2 on its axial hydrogen; none when the two are alike or populations are unknown."""
     if not mates or mates[0].alike == own.alike or own.orientation[0][1] != "ax":
         return None
-    result = analysis.ring_systems[number]
-    bias = 0.0
-    for state, (_, word) in zip(result.states, own.orientation, strict=True):
-        if state.population is None:
-            return None
-        bias += state.population * {"ax": 1.0, "eq": -1.0}.get(word, 0.0)
+    shares = shares_of(analysis.ring_systems[number], analysis.temperature_K)
+    if shares is None:
+        return None
+    signs = {"ax": 1.0, "eq": -1.0}
+    bias = sum(share * signs.get(word, 0.0) for share, (_, word) in zip(shares, own.orientation, strict=True))
     usual, low, high = (spectra.general(name).value for name in ("gap", "gap low", "gap high"))
     structure = analysis.structure
     return Gap(
@@ -358,10 +364,15 @@ def _is_beside_carbonyl(structure: Structure, atom: int) -> bool:
     )
 
 
-def _notes(analysis: Analysis, signals: Sequence[Signal]) -> tuple[str, ...]:
+def _notes(
+    analysis: Analysis, signals: Sequence[Signal], shares: Sequence[tuple[float, ...] | None]
+) -> tuple[str, ...]:
     """Remarks that follow from the molecule."""
     notes = []
-    if any(state.population is None for result in analysis.ring_systems for state in result.states):
+    open_ = [result.states[0].population is None for result in analysis.ring_systems]
+    if any(known is not None and doubt for known, doubt in zip(shares, open_, strict=True)):
+        notes.append("States with an unpriced contact hold under 1 % whatever it costs; averages leave them out.")
+    if any(known is None for known in shares):
         notes.append("A contact without a price decides the populations: couplings are given per state, not averaged.")
     missing = {s.hydrogen.atom for s in signals for c in s.couplings if any(value is None for _, value in c.per_state)}
     if missing:

@@ -19,7 +19,11 @@ _LETTER = re.compile(r"quint|sext|sept|oct|d|t|q")
 _COUNTS = {"d": 1, "t": 2, "q": 3, "quint": 4, "sext": 5, "sept": 6, "oct": 7}
 #: A predicted signal has too few partners for an observed splitting: deviation charged for each [standard deviations].
 _NO_PARTNER = 8.0
-_HELP = 'Write couplings as "H1=10.8,4.2; H4=3.1", with a word if you like: "H1=td 10.8,4.2", "H4=br s".'
+_HELP = (
+    'Write couplings as "H1=10.8,4.2; H4=3.1", with a word if you like: "H1=td 10.8,4.2", "H4=br s", '
+    'or the width of the outer lines: "H1=W 30".'
+)
+_MOST_HZ = {False: 40.0, True: 100.0}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -38,6 +42,8 @@ class Observation:
         Splittings, those a word such as ``td`` counts several times repeated [Hz].
     is_narrow
         True for a broad singlet: nothing resolved.
+    width_Hz
+        Distance of the outer lines when only that was read [Hz].
     """
 
     name: str
@@ -45,6 +51,7 @@ class Observation:
     side: str = ""
     couplings_Hz: tuple[float, ...] = ()
     is_narrow: bool = False
+    width_Hz: float | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -129,7 +136,11 @@ def _parse(part: str) -> Observation:
         raise UsageError(f"{part!r} is no observed proton.", _HELP)
     first = re.search(r"[0-9]", rest)
     word = (rest[: first.start()] if first else rest).replace("J", "").replace("=", "").strip(" ,")
-    numbers = _numbers(rest[first.start() :] if first else "", part)
+    wide = word.upper() == "W"
+    numbers = _numbers(rest[first.start() :] if first else "", part, _MOST_HZ[wide])
+    if wide and len(numbers) == 1:
+        side = match["side"] or ""
+        return Observation(name=name, atom=int(match["number"]) - 1, side=side, width_Hz=numbers[0])
     shape = _WORD.fullmatch(word)
     narrow = word.replace(" ", "") in ("brs", "s")
     if shape is None and not narrow:
@@ -149,14 +160,14 @@ def _parse(part: str) -> Observation:
     )
 
 
-def _numbers(text: str, part: str) -> list[float]:
+def _numbers(text: str, part: str, most_Hz: float) -> list[float]:
     pieces = [piece.strip().removesuffix("Hz").strip() for piece in text.split(",")] if text else []
     try:
         numbers = [float(piece) for piece in pieces if piece]
     except ValueError:
         raise UsageError(f"{part!r} holds something that is no number.", _HELP) from None
-    if any(not 0 <= j <= 40 for j in numbers):
-        raise UsageError(f"{part!r} holds a coupling no two protons have.", "Give couplings in Hz, 0 to 40.")
+    if any(not 0 <= j <= most_Hz for j in numbers):
+        raise UsageError(f"{part!r} holds a coupling no two protons have.", f"Give Hz, 0 to {most_Hz:g}.")
     return numbers
 
 
@@ -233,6 +244,8 @@ def fit_signal(observation: Observation, signal: Signal, tables: SpectralTables)
                 return None
             sigma = math.hypot(coupling.uncertainty_Hz, reading)
             predicted.extend([(coupling.label, coupling.average_Hz, sigma)] * coupling.count)
+    if observation.width_Hz is not None:
+        return _fit_width(observation.name, signal.label, predicted, observation.width_Hz, reading)
     floor = tables.reading["narrow" if observation.is_narrow else "resolved"].value
     spare = sum(1 for u in signal.unpredicted if u.reason != EXCHANGES)
     squares, pairings = _match(observation.couplings_Hz, predicted, floor, spare)
@@ -243,6 +256,19 @@ def fit_signal(observation: Observation, signal: Signal, tables: SpectralTables)
         log_likelihood=-0.5 * squares - constant,
         squares=squares,
         pairings=pairings,
+    )
+
+
+def _fit_width(
+    name: str, label: str, predicted: Sequence[tuple[str, float, float]], width_Hz: float, reading: float
+) -> Fit:
+    """How a predicted width fits an observed one; both outer lines carry the error of a reading."""
+    total = math.fsum(value for _, value, _ in predicted)
+    sigma = math.sqrt(math.fsum(s**2 for _, _, s in predicted) + 2.0 * reading**2)
+    squares = ((total - width_Hz) / sigma) ** 2
+    pairing = Pairing(partner="W", predicted_Hz=total, observed_Hz=width_Hz)
+    return Fit(
+        name=name, label=label, log_likelihood=-0.5 * squares - math.log(sigma), squares=squares, pairings=(pairing,)
     )
 
 

@@ -187,23 +187,27 @@ class Request:
     Attributes
     ----------
     first, second
-        Names of the hydrogens of a coupling; second is empty for a shift, both for a value without a name.
+        Names of the hydrogens of a coupling; second is empty for a shift or width, both for a value without a name.
     value
         Observed [Hz or ppm].
+    is_width
+        True for the width between the outer lines of a signal.
     """
 
     first: str
     second: str
     value: float
+    is_width: bool = False
 
 
 def parse_averages(text: str) -> tuple[Request, ...]:
-    """Observed averages from text such as ``H1-H2=7.1; H1=3.70``.
+    """Observed averages from text such as ``H1-H2=7.1; W(H1)=22; H1=3.70``.
 
     Parameters
     ----------
     text
-        Couplings as two labels with a hyphen, shifts as one label, or a bare number.
+        Couplings as two labels with a hyphen, widths as W and a label in brackets, shifts as one label, or a bare
+        number.
 
     Returns
     -------
@@ -218,14 +222,19 @@ def parse_averages(text: str) -> tuple[Request, ...]:
     found = []
     for part in filter(None, (piece.strip() for piece in text.split(";"))):
         name, _, number = part.rpartition("=")
+        name = name.strip()
+        is_width = name[:2].upper() == "W(" and name.endswith(")")
+        name = name[2:-1] if is_width else name
         first, _, second = (piece.strip() for piece in name.partition("-"))
         try:
             value = float(number)
         except ValueError:
             value = math.nan
-        if not math.isfinite(value):
-            raise UsageError(f"{part!r} is no observed average.", 'Write it as "H1-H2=7.1" (Hz) or "H1=3.70" (ppm).')
-        found.append(Request(first=first, second=second, value=value))
+        if not math.isfinite(value) or (is_width and (second or not first)):
+            raise UsageError(
+                f"{part!r} is no observed average.", 'Write it as "H1-H2=7.1", "W(H1)=22" (Hz) or "H1=3.70" (ppm).'
+            )
+        found.append(Request(first=first, second=second, value=value, is_width=is_width))
     if not found:
         raise UsageError("No observed average is given.", 'Write it as "H1-H2=7.1".')
     return tuple(found)
@@ -260,33 +269,44 @@ def populations_from_average(
     UsageError
         If a label is unknown or not clear, a shift comes without model values, or the ring does not flip.
     """
-    is_shift = bool(request.first) and not request.second
-    unit = "ppm" if is_shift else "Hz"
-    limit = spectra.general("last share").value
+    is_shift = bool(request.first) and not request.second and not request.is_width
     reading = spectra.reading["shift reading" if is_shift else "reading"].value
-    own = spectra.reading["shift model"].value if is_shift else spectra.model["equation error"].value
-    error = observed_sigma if observed_sigma is not None else reading
     if models is not None:
         # values read off model compounds carry the error of a reading, predicted ones that of the equation
-        own = own if is_shift else reading
+        own = spectra.reading["shift model"].value if is_shift else reading
         first, second = models
         forms = _form_names(spectrum, request)
-    elif not request.second:
-        raise UsageError("A shift needs the shifts of the two pure forms.", "Give them with --models FAVOURED,OTHER.")
+    elif is_shift or not request.first:
+        what = "A shift needs the shifts" if is_shift else "A value without a name needs the values"
+        raise UsageError(f"{what} of the two pure forms.", "Give them with --models FAVOURED,OTHER.")
     else:
-        first, second, forms, doubled = _predicted(spectrum, request)
-        own *= spectra.model["flat neighbour factor"].value if doubled else 1.0
+        model = _width(spectrum, request) if request.is_width else _coupling(spectrum, request)
+        first, second, forms = model.first, model.second, model.forms
+        doubled = spectra.model["flat neighbour factor"].value
+        own = spectra.model["equation error"].value * math.sqrt(model.plain + doubled**2 * model.doubled)
+    name = f"W({request.first})" if request.is_width else "-".join(filter(None, (request.first, request.second)))
     own = model_sigma if model_sigma is not None else own
     return estimate_population(
-        Measured(value=request.value, sigma=error),
+        Measured(value=request.value, sigma=observed_sigma if observed_sigma is not None else reading),
         Measured(value=first, sigma=own),
         Measured(value=second, sigma=own),
         temperature_K=spectrum.analysis.temperature_K,
-        limit=limit,
-        name="-".join(filter(None, (request.first, request.second))),
-        unit=unit,
+        limit=spectra.general("last share").value,
+        name=name,
+        unit="ppm" if is_shift else "Hz",
         forms=forms,
     )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Model:
+    """Predicted values of the two forms [Hz], and how many couplings of plain and of doubled error they sum."""
+
+    first: float
+    second: float
+    forms: tuple[str, str]
+    plain: int
+    doubled: int
 
 
 def _form_names(spectrum: Spectrum, request: Request) -> tuple[str, str]:
@@ -308,7 +328,7 @@ def _flip_ids(spectrum: Spectrum, number: int) -> tuple[str, str]:
     return result.states[0].id, partner.id
 
 
-def _predicted(spectrum: Spectrum, request: Request) -> tuple[float, float, tuple[str, str], bool]:
+def _coupling(spectrum: Spectrum, request: Request) -> _Model:
     """Predicted coupling in the favoured state and in its flip [Hz]."""
     ends = {s.hydrogen.key for s in named_signals(spectrum, request.second)}
     pairs = [
@@ -320,18 +340,49 @@ def _predicted(spectrum: Spectrum, request: Request) -> tuple[float, float, tupl
     name = f"{request.first}-{request.second}"
     if not pairs:
         raise UsageError(f"{name} is no vicinal coupling of two ring hydrogens.", "`ringstrain nmr` lists them.")
+    if not any(c.observable for _, c in pairs):
+        raise UsageError(
+            f"{name} couples two hydrogens that are alike; no spectrum shows it.",
+            "Take the coupling to another neighbour or a width, or give --models without a name.",
+        )
     forms = _flip_ids(spectrum, pairs[0][0].ring_system)
-    values = {(dict(c.per_state)[forms[0]], dict(c.per_state)[forms[1]]) for _, c in pairs}
-    rounded = {tuple(round(v, 3) if v is not None else None for v in pair) for pair in values}
-    if len(rounded) > 1:
+    kinds = {}
+    for signal, coupling in pairs:
+        first, second = (dict(coupling.per_state)[form] for form in forms)
+        if coupling.observable and first is not None and second is not None:
+            kinds[(round(first, 3), round(second, 3))] = (signal, coupling, first, second)
+    if len(kinds) > 1:
         labels = ", ".join(sorted({f"{s.label}-{c.label}" for s, c in pairs}))
         raise UsageError(
             f"{name} may mean several couplings: {labels}.", "Name the hydrogens as `ringstrain nmr` does."
         )
-    first, second = next(iter(values))
-    if first is None or second is None:
+    if not kinds:
         raise UsageError(f"{name} cannot be predicted.", "Give the values of the pure forms with --models.")
-    return first, second, forms, pairs[0][1].doubled
+    _, coupling, first, second = next(iter(kinds.values()))
+    return _Model(first=first, second=second, forms=forms, plain=not coupling.doubled, doubled=coupling.doubled)
+
+
+def _width(spectrum: Spectrum, request: Request) -> _Model:
+    """Predicted width of a signal in the favoured state and in its flip [Hz]."""
+    signals = named_signals(spectrum, request.first)
+    if len({s.hydrogen.alike for s in signals}) > 1:
+        labels = ", ".join(s.label for s in signals)
+        raise UsageError(f"{request.first} may mean {labels}.", "Name the hydrogen as `ringstrain nmr` does.")
+    signal = signals[0]
+    forms = _flip_ids(spectrum, signal.ring_system)
+    shown = [c for c in signal.couplings if c.observable]
+    widths = []
+    for form in forms:
+        values = [dict(c.per_state)[form] for c in shown]
+        known = [v * c.count for v, c in zip(values, shown, strict=True) if v is not None]
+        if len(known) < len(shown) or not known:
+            raise UsageError(
+                f"W({request.first}) cannot be predicted.", "Give the values of the pure forms with --models."
+            )
+        widths.append(math.fsum(known))
+    ring = [c for c in shown if c.partner is not None]
+    doubled = sum(c.doubled for c in ring)
+    return _Model(first=widths[0], second=widths[1], forms=forms, plain=len(ring) - doubled, doubled=doubled)
 
 
 def named_signals(spectrum: Spectrum, name: str) -> tuple[Signal, ...]:

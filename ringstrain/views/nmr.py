@@ -80,7 +80,7 @@ def nmr_view(spectrum: Spectrum, sources: Mapping[str, Source], look: Look) -> I
         if len(analysis.ring_systems) > 1:
             yield look.text("")
             yield look.text(f"Ring system {number + 1} (atoms {atom_numbers(result.system.atoms)})", "bold")
-        yield look.text(_forms_line(result, look), "bold")
+        yield look.text(_forms_line(spectrum, number), "bold")
         yield look.text("")
         yield multiplet_table(spectrum, number, look, notes)
         yield look.text("")
@@ -97,24 +97,28 @@ def nmr_view(spectrum: Spectrum, sources: Mapping[str, Source], look: Look) -> I
         yield look.text(f"Note: {note}")
 
 
-def _forms_line(result: SystemResult, look: Look) -> str:
+def _forms_line(spectrum: Spectrum, number: int) -> str:
     """Which forms the averages run over."""
-    shown = _shown(result)
-    if result.states[0].population is None:
+    result, shares = spectrum.analysis.ring_systems[number], spectrum.shares[number]
+    shown = _shown(spectrum, number)
+    if shares is None:
         return "Populations not determined: couplings per form only."
     if len(shown) == 1:
         return f"{form_name(result.states[0])} only."
-    parts = [f"{form_name(s)} {percent(s.population or 0.0)}" for s in shown]
-    rest = 1.0 - sum(s.population or 0.0 for s in shown)
+    by_id = dict(zip((s.id for s in result.states), shares, strict=True))
+    parts = [f"{form_name(s)} {percent(by_id[s.id])}" for s in shown]
+    rest = 1.0 - sum(by_id[s.id] for s in shown)
     tail = f", others {percent(rest)}" if rest > 1e-3 else ""
     return f"Averages over {listed(parts)}{tail}."
 
 
-def _shown(result: SystemResult) -> tuple[State, ...]:
+def _shown(spectrum: Spectrum, number: int) -> tuple[State, ...]:
     """States with a column of their own: the first, and others that matter or are its flip."""
+    result, shares = spectrum.analysis.ring_systems[number], spectrum.shares[number]
     first, *rest = result.states
     e = result.equilibrium
-    worth = [s for s in rest if (s.population or 0.0) >= 1e-2 or (e is not None and s.id == e.other)]
+    sizes = shares or (0.0,) * len(result.states)
+    worth = [s for s, p in zip(rest, sizes[1:], strict=True) if p >= 1e-2 or (e is not None and s.id == e.other)]
     return (first, *worth[: MAX_FORMS - 1])
 
 
@@ -153,8 +157,7 @@ def _unpredicted(spectrum: Spectrum, number: int, look: Look) -> Iterator[Render
 
 def _per_form(spectrum: Spectrum, number: int, look: Look) -> Iterator[RenderableType]:
     """Couplings in each form beside their average."""
-    result = spectrum.analysis.ring_systems[number]
-    shown = _shown(result)
+    shown = _shown(spectrum, number)
     if len(shown) == 1:
         doubled = [s for s in spectrum.signals if s.ring_system == number and any(c.doubled for c in s.couplings)]
         text = f"Each coupling {_PM} 1.0 Hz (95 %)"
@@ -213,7 +216,7 @@ def _carbons(spectrum: Spectrum, number: int, look: Look, notes: Footnotes) -> I
     result = spectrum.analysis.ring_systems[number]
     own = _ring_carbons(spectrum, result)
     known = [c for c in own if any(v is not None for _, v in c.per_state)]
-    shown = [s for s in _shown(result) if s.shapes == ("chair",)] or [result.states[0]]
+    shown = [s for s in _shown(spectrum, number) if s.shapes == ("chair",)] or [result.states[0]]
     yield look.text("")
     if known:
         marks = " ".join(dict.fromkeys(notes.mark(key) for c in known for key in c.sources))
