@@ -25,7 +25,9 @@ def _codes(rows: Integers, permutations: Integers, base: int) -> Integers:
     return out.T
 
 
-def image_codes(rows: Integers, permutations: Integers, signs: Integers, mirrors: Integers) -> tuple[Integers, Integers]:
+def image_codes(
+    rows: Integers, permutations: Integers, signs: Integers, mirrors: Integers
+) -> tuple[Integers, Integers]:
     """Number of each image of each row, and where the image exists.
 
     Parameters
@@ -42,7 +44,7 @@ def image_codes(rows: Integers, permutations: Integers, signs: Integers, mirrors
     codes, exists
         ``(patterns, operations)``; an improper image of a group without mirror image does not exist.
     """
-    base = max(int(len(mirrors)), 2)
+    base = max(len(mirrors), 2)
     if base ** rows.shape[1] >= 2**62:
         return _wide_codes(rows, permutations, signs, mirrors)
     codes = np.empty((len(rows), len(permutations)), dtype=np.int64)
@@ -57,7 +59,9 @@ def image_codes(rows: Integers, permutations: Integers, signs: Integers, mirrors
     return codes, exists
 
 
-def _wide_codes(rows: Integers, permutations: Integers, signs: Integers, mirrors: Integers) -> tuple[Integers, Integers]:
+def _wide_codes(
+    rows: Integers, permutations: Integers, signs: Integers, mirrors: Integers
+) -> tuple[Integers, Integers]:
     """The same for so many slots or groups that numbers overflow: images ranked as byte strings."""
     flipped = mirrors[rows]
     missing = (flipped < 0).any(axis=1)
@@ -131,29 +135,59 @@ def boltzmann(energies: Floats, rt_kcal: float) -> tuple[Floats, Floats]:
     return factors / total, (lowest - rt_kcal * np.log(total))[:, 0]
 
 
-def two_lowest_sets(energies: Floats, labels: Integers) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
-    """States of the set that holds the lowest state, and states of the set that holds the lowest of the rest.
+def lowest_set(energies: Floats, labels: Integers, weights: Floats) -> Integers:
+    """Label of the set that holds the lowest state; among equal energies the set of the lowest free energy.
+
+    Parameters
+    ----------
+    energies
+        ``(patterns, states)`` [kcal/mol], infinite where a state does not count.
+    labels
+        Set of each state, ``(patterns, states)``.
+    weights
+        Free energy of each set, ``(patterns, sets)`` [kcal/mol].
+    """
+    exists = np.isfinite(energies)
+    rounded = np.where(exists, np.round(np.where(exists, energies, 0.0), 9), np.inf)
+    tied = rounded == rounded.min(axis=1, keepdims=True)
+    second = np.where(tied, np.round(np.take_along_axis(weights, labels, axis=1), 9), np.inf)
+    tied &= second == second.min(axis=1, keepdims=True)
+    best: Integers = np.where(tied, labels, np.iinfo(np.int64).max).min(axis=1)
+    return best
+
+
+def two_lowest_sets(
+    energies: Floats, labels: Integers, rt_kcal: float
+) -> tuple[NDArray[np.bool_], NDArray[np.bool_], Floats]:
+    """The set that holds the lowest state, the set that holds the lowest of the rest, and the gap between them.
 
     Parameters
     ----------
     energies
         ``(patterns, states)`` [kcal/mol], infinite where a state does not exist.
     labels
-        Set of each state.
+        Set of each state, a number below the number of states.
+    rt_kcal
+        Gas constant times temperature [kcal/mol].
 
     Returns
     -------
-    favoured, other
-        ``(patterns, states)``; ``other`` is all false when there is one set only.
+    favoured, other, gap
+        States of either set, ``(patterns, states)``; ``other`` is all false and the gap infinite when there is one set.
     """
     exists = np.isfinite(energies)
-    rounded = np.where(exists, np.round(np.where(exists, energies, 0.0), 9), np.inf)
-    best = np.take_along_axis(labels, rounded.argmin(axis=1)[:, None], axis=1)
-    favoured = (labels == best) & exists
-    rest = np.where(favoured, np.inf, rounded)
-    second = np.take_along_axis(labels, rest.argmin(axis=1)[:, None], axis=1)
-    other = (labels == second) & exists & ~favoured
-    return favoured, other
+    sets = int(labels.max()) + 1 if labels.size else 1
+    weights = np.stack([set_energy(energies, (labels == label) & exists, rt_kcal) for label in range(sets)], axis=1)
+    best = lowest_set(energies, labels, weights)
+    favoured = (labels == best[:, None]) & exists
+    rest = np.where(favoured, np.inf, energies)
+    alone = ~np.isfinite(rest).any(axis=1)
+    rest[alone] = 0.0
+    second = lowest_set(rest, labels, weights)
+    other = (labels == second[:, None]) & exists & ~favoured & ~alone[:, None]
+    rows = np.arange(len(energies))
+    gap = np.where(alone, np.inf, weights[rows, second] - weights[rows, best])
+    return favoured, other, gap
 
 
 def set_energy(energies: Floats, members: NDArray[np.bool_], rt_kcal: float) -> Floats:

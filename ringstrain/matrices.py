@@ -16,7 +16,7 @@ from ringstrain.billing import parties_of
 from ringstrain.palette import PaletteGroup, geometry_of, set_groups
 from ringstrain.placing import Scaffold
 from ringstrain.provenance import Price
-from ringstrain.relations import CHAIRS, SHAPES, Relations
+from ringstrain.relations import CHAIRS, SHAPES, Meeting, Relations
 from ringstrain.ringgraph import atom_kind, find_ring_systems
 from ringstrain.structure.graft import graft
 from ringstrain.tables.groups import Group
@@ -126,12 +126,18 @@ class Matrices:
         return places, name, price.value_kcal or 0.0
 
     def _fill(
-        self, places: list[RingPlace], name: str, shape_price: float, contents: Sequence[tuple[int, int]], *, twisting: bool
+        self,
+        places: list[RingPlace],
+        name: str,
+        shape_price: float,
+        contents: Sequence[tuple[int, int]],
+        *,
+        twisting: bool,
     ) -> Priced:
         shapes = range(SHAPES if twisting else CHAIRS)
         plain = self._site_prices(places, twisting=False)
         chair = self._site_prices(places, twisting=True) if twisting else plain
-        filler = _Filler(np.array(contents, dtype=np.intp), len(shapes), len(self.palette) + 2)
+        filler = _Filler(np.array(contents, dtype=np.intp), len(shapes), self._heavy())
         for shape in shapes:
             site = chair if shape < CHAIRS else plain
             for column in range(12):
@@ -145,15 +151,15 @@ class Matrices:
         for meeting in self.relations.meetings:
             if meeting.shape not in shapes or (meeting.kind == "across" and not across):
                 continue
-            values, unknown = self._pair_prices(meeting.kind)
+            values, unknown, polar = self._pair_prices(meeting.kind)
+            strain = None
             if meeting.kind == "syn-axial X//Y":
                 a, b = plain.shares[meeting.first // 2], plain.shares[meeting.second // 2]
                 heavy = self._heavy()
                 values = np.where(heavy[:, None] & heavy[None, :], values - a[:, None] - b[None, :], 0.0)
                 values = np.where(unknown > 0, 0.0, values)
-            filler.add_pair(
-                meeting.shape, meeting.first, meeting.second, values, unknown, strain=meeting.kind == "syn-axial X//Y"
-            )
+                strain = np.where(polar, 0.0, values)  # dipoles call for no twist-boat
+            filler.add_pair(meeting, values, unknown, strain)
         return filler.finish(strain=not twisting)
 
     def _heavy(self) -> NDArray[np.bool_]:
@@ -174,7 +180,12 @@ class Matrices:
                     values[number, index] = values[number, -1] if self._swings(number) else 0.0
                     continue
                 price = ring_value(self.book, place, member.group)
-                if twisting and place.is_plain and member.group.key == _REPRICED and price.row.startswith(_REPRICED_ROW):
+                if (
+                    twisting
+                    and place.is_plain
+                    and member.group.key == _REPRICED
+                    and price.row.startswith(_REPRICED_ROW)
+                ):
                     price = self.book.rule("tert-butyl-axial-chair", _REPRICED)
                 if price.value_kcal is None:
                     unknown[number, index] = _fingerprint("A-value", (member.group.key,), price.row)
@@ -188,12 +199,13 @@ class Matrices:
         atom = self.scaffold.system.rings[0].atoms[place]
         return self.scaffold.system.kinds[atom] == "inverting"
 
-    def _pair_prices(self, kind: str) -> tuple[Floats, NDArray[np.uint64]]:
-        """Price of every pair of groups in one kind of meeting, and the fingerprint of those without one."""
+    def _pair_prices(self, kind: str) -> tuple[Floats, NDArray[np.uint64], NDArray[np.bool_]]:
+        """Price of every pair of groups in one kind of meeting, the fingerprint of those without one, which are polar."""
         ask = _QUESTIONS[kind]
         count = len(self.palette) + 2
         values = np.zeros((count, count))
         unknown = np.zeros((count, count), dtype=np.uint64)
+        polar = np.zeros((count, count), dtype=bool)
         for i, first in enumerate(self.palette, 1):
             for j, second in enumerate(self.palette, 1):
                 if "hydrogen" in (first.group.kind, second.group.kind):
@@ -201,6 +213,7 @@ class Matrices:
                 price = ask(self.book, first.group, second.group)
                 if price is None:
                     continue
+                polar[i, j] = price.polar
                 if price.value_kcal is None:
                     keys = (first.group.key, second.group.key)
                     rule = {"gauche, both equatorial": "gauche", "geminal, isoclinal": "geminal"}.get(kind, kind)
@@ -208,7 +221,7 @@ class Matrices:
                     unknown[i, j] = _fingerprint(rule, ordered, price.row)
                 else:
                     values[i, j] = price.value_kcal
-        return values, unknown
+        return values, unknown, polar
 
 
 def _isoclinal(book: PriceBook, x: Group, y: Group) -> Price:
@@ -246,10 +259,10 @@ def _fingerprint(rule: str, groups: tuple[str, ...], row: str) -> int:
 class _Filler:
     """Tables being filled: contents of two places against states."""
 
-    def __init__(self, contents: NDArray[np.intp], shapes: int, count: int) -> None:
+    def __init__(self, contents: NDArray[np.intp], shapes: int, heavy: NDArray[np.bool_]) -> None:
         self.upper_lower = contents.T
         self.size = len(contents)
-        self.shapes = shapes
+        self.heavy = heavy  # the hydrogen of a nitrogen is no strain of the ring
         steps = [(place, (place + 1) % 6) for place in range(6)] + [(place, (place + 2) % 6) for place in range(6)]
         steps += [(place, place + 3) for place in range(3)]
         self.numbers = {pair: number for number, pair in enumerate(steps)}
@@ -272,33 +285,28 @@ class _Filler:
         groups = self.upper_lower[face]
         self.energies[place, :, :, shape] += values[groups][:, None]
         if strain:
-            priced = np.where(self._is_heavy_price(values, groups), values[groups], 0.0)
-            self.strain[place, :, :, shape] += priced[:, None]
+            self.strain[place, :, :, shape] += np.where(self.heavy, values, 0.0)[groups][:, None]
         self.unknown[place, :, :, shape] += (unknown[groups] * np.uint64(thirds))[:, None]
 
-    def _is_heavy_price(self, values: Floats, groups: NDArray[np.intp]) -> NDArray[np.bool_]:
-        """The hydrogen of a nitrogen is no strain of the ring."""
-        heavy: NDArray[np.bool_] = groups != len(values) - 1
-        return heavy
-
-    def add_pair(
-        self, shape: int, first: int, second: int, values: Floats, unknown: NDArray[np.uint64], *, strain: bool
-    ) -> None:
-        """A price of two sites."""
-        (a, face_a), (b, face_b) = divmod(first, 2), divmod(second, 2)
+    def add_pair(self, meeting: Meeting, values: Floats, unknown: NDArray[np.uint64], strain: Floats | None) -> None:
+        """A price of two sites, and what of it counts as strain."""
+        shape = meeting.shape
+        (a, face_a), (b, face_b) = divmod(meeting.first, 2), divmod(meeting.second, 2)
         groups_a, groups_b = self.upper_lower[face_a], self.upper_lower[face_b]
         if a == b:
             self.energies[a, :, :, shape] += values[groups_a, groups_b][:, None]
             self.unknown[a, :, :, shape] += (unknown[groups_a, groups_b] * np.uint64(3))[:, None]
             return
-        number = self.numbers.get((a, b))
-        block, signs = values[np.ix_(groups_a, groups_b)], unknown[np.ix_(groups_a, groups_b)] * np.uint64(3)
-        if number is None:
-            number, block, signs = self.numbers[(b, a)], block.T, signs.T
-        self.energies[number, :, :, shape] += block
-        self.unknown[number, :, :, shape] += signs
-        if strain:
-            self.strain[number, :, :, shape] += block
+        turned = (a, b) not in self.numbers
+        number = self.numbers[(b, a) if turned else (a, b)]
+        grid = np.ix_(groups_a, groups_b)
+        for target, block in (
+            (self.energies, values[grid]),
+            (self.unknown, unknown[grid] * np.uint64(3)),
+            (self.strain, None if strain is None else strain[grid]),
+        ):
+            if block is not None:
+                target[number, :, :, shape] += block.T if turned else block
         self.used[number] = True
 
     def finish(self, *, strain: bool) -> Priced:

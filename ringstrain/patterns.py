@@ -110,7 +110,10 @@ class Pattern:
         from ringstrain import __version__
 
         own = {name: getattr(self, name) for name in self.__slots__ if name != "groups"}
-        groups = [{name: getattr(g, name) for name in ("locant", "face", "group", "axial", "axial_share")} for g in self.groups]
+        groups = [
+            {name: getattr(g, name) for name in ("locant", "face", "group", "axial", "axial_share")}
+            for g in self.groups
+        ]
         return {"schema": SCHEMA, "kind": "pattern", "version": __version__, **own, "groups": groups}
 
 
@@ -225,7 +228,9 @@ class Search:
             ring=screener.scaffold.name,
             temperature_K=analysis.temperature_K,
             medium=analysis.medium,
-            pattern=" ".join(f"{locate(screener.scaffold.slots[n])}-{screener.palette[row[n] - 1].name}" for n in heads),
+            pattern=" ".join(
+                f"{locate(screener.scaffold.slots[n])}-{screener.palette[row[n] - 1].name}" for n in heads
+            ),
             smiles=smiles,
             groups=groups,
             placements=placements,
@@ -266,7 +271,10 @@ class Search:
         swapped[[first, second]] = row[[second, first]]
         proper = screener.scaffold.signs > 0
         codes, _ = image_codes(
-            np.stack((row, swapped)), screener.scaffold.permutations[proper], screener.scaffold.signs[proper], screener.mirrors
+            np.stack((row, swapped)),
+            screener.scaffold.permutations[proper],
+            screener.scaffold.signs[proper],
+            screener.mirrors,
         )
         return bool((codes[1] == codes[0, 0]).any())
 

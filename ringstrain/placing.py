@@ -158,7 +158,9 @@ def make_scaffold(ring: str, tables: Tables) -> Scaffold:
     system = next((s for s in systems if s.atom_set.issuperset(marks)), None)
     if system is None or not marks:
         raise UsageError(
-            "The marked positions are not all in one ring system." if marks else "No position of the scaffold is marked.",
+            "The marked positions are not all in one ring system."
+            if marks
+            else "No position of the scaffold is marked.",
             "Mark ring atoms that may take a group with a number: [CH2:1]1[CH2:2]CCCC1=O.",
         )
     groups = group_map(structure, system, tables)
@@ -214,7 +216,9 @@ def _slots(
         open_sites = [s for s in geometry.sites[number][place] if _is_hydrogen(structure, s)]
         if not open_sites and strict:
             raise InputError(
-                f"Position {marks[atom]} of the scaffold has no hydrogen to replace.", "Mark another one.", atoms=(atom,)
+                f"Position {marks[atom]} of the scaffold has no hydrogen to replace.",
+                "Mark another one.",
+                atoms=(atom,),
             )
         if system.kinds[atom] == "inverting":
             open_sites = open_sites[:1]

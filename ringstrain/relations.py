@@ -78,9 +78,7 @@ def find_relations(tables: Tables) -> Relations:
     column_of = {heads[number]: slot.column for number, slot in enumerate(bare.slots)}
     system = find_ring_systems(structure)[0][0]
     geometry = geometry_of(structure, system)
-    found = sorted(
-        shapes_of(system.rings[0], ("twist-boat",)), key=lambda s: (s.shape, tuple(-t for t in s.torsions))
-    )
+    found = sorted(shapes_of(system.rings[0], ("twist-boat",)), key=lambda s: (s.shape, tuple(-t for t in s.torsions)))
     factors = np.zeros((SHAPES, 12))
     axial = np.zeros((SHAPES, 12), dtype=bool)
     meetings: list[Meeting] = []
@@ -104,8 +102,9 @@ def find_relations(tables: Tables) -> Relations:
                 first, second = (second, first) if axial[number, second] else (first, second)
                 kind = "geminal" if axial[number, first] else "geminal, isoclinal"
                 meetings.append(Meeting(number, kind, first, second))
-        for a in range(12):
-            for b in range(a + 1, 12):
-                if axial[number, a] and axial[number, b] and b // 2 - a // 2 == 3:
-                    meetings.append(Meeting(number, "across", a, b))
+        if shape.shape == "chair":
+            opposite = [(a, b) for a in range(12) for b in range(a + 1, 12) if b // 2 - a // 2 == 3 and (a + b) % 2]
+            meetings.extend(
+                Meeting(number, "across", a, b) for a, b in opposite if axial[number, a] and axial[number, b]
+            )
     return Relations(factors, axial, tuple(meetings), np.array([shape.torsions for shape in found]))

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from ringstrain._kernels import boltzmann, image_codes, set_energy, sum_prices, two_lowest_sets
+from ringstrain._kernels import boltzmann, image_codes, sum_prices, two_lowest_sets
 from ringstrain.analysis import Analysis, SystemResult, analyze
 from ringstrain.equilibrium import mixture_energy
 from ringstrain.errors import OutOfScope
@@ -319,33 +319,45 @@ class Screener:
     # ---- weighing --------------------------------------------------------------------------------------------
 
     def _weigh(self, screen: Screen, energies: Floats, unknown: NDArray[np.uint64] | None, mates: Flags) -> None:
-        """Fill a screen from the energies of all states."""
+        """Fill a screen from the energies of all states; patterns without twist-boats have few states to look at."""
         sides = 1 << len(self._swinging)
+        twisted = np.isfinite(energies[:, CHAIRS * sides])
+        for chosen, shapes in ((np.flatnonzero(~twisted), CHAIRS), (np.flatnonzero(twisted), SHAPES)):
+            if len(chosen):
+                part = screen.take(chosen)
+                states = slice(shapes * sides)
+                marks = None if unknown is None else unknown[chosen, states]
+                self._weigh_states(part, energies[chosen, states], marks, mates[chosen], shapes)
+                screen.put(chosen, part)
+
+    def _weigh_states(
+        self, screen: Screen, energies: Floats, unknown: NDArray[np.uint64] | None, mates: Flags, shapes: int
+    ) -> None:
+        """Fill a screen of patterns that all have the same states."""
+        sides = energies.shape[1] // shapes
         rt = R_KCAL * self.conditions.temperature_K
         shares, mixture = boltzmann(energies, rt)
-        labels = np.repeat(self._labels(mates), sides, axis=1)
-        favoured, other = two_lowest_sets(energies, labels)
-        with np.errstate(invalid="ignore"):
-            gap = set_energy(energies, other, rt) - set_energy(energies, favoured, rt)
+        labels = np.repeat(self._labels(mates)[:, :shapes], sides, axis=1)
+        favoured, other, gap = two_lowest_sets(energies, labels, rt)
         single = ~other.any(axis=1)
         gap[single] = 0.0
-        shape_shares = shares.reshape(len(energies), SHAPES, sides).sum(axis=2)
         screen.dg_kcal[:] = gap
         screen.energy_kcal[:] = mixture
-        screen.form_share[:] = shape_shares.max(axis=1)
-        lowest = np.round(energies, 9).argmin(axis=1)
-        axial, equatorial = self._standing(self.relations.axial), self._standing(self.relations.factors == 0.0)
+        screen.form_share[:] = shares.reshape(len(energies), shapes, sides).sum(axis=2).max(axis=1)
+        lowest = np.where(favoured, energies, np.inf).argmin(axis=1)
+        states = slice(shapes * sides)
+        axial = self._standing(self.relations.axial)[states]
+        equatorial = self._standing(self.relations.factors == 0.0)[states]
         screen.axial_share[:] = shares @ axial
         screen.equatorial_share[:] = shares @ equatorial
         screen.favoured_axial[:] = axial[lowest] > 0
         screen.favoured_equatorial[:] = equatorial[lowest] > 0
         if unknown is not None:
-            exists = np.isfinite(energies)
             first = np.take_along_axis(unknown, lowest[:, None], axis=1)
-            undetermined = ((unknown != first) & exists).any(axis=1)
+            undetermined = (unknown != first).any(axis=1)
             for array in (screen.energy_kcal, screen.form_share, screen.axial_share, screen.equatorial_share):
                 array[undetermined] = np.nan
-            rival = np.where(other, np.round(energies, 9), np.inf).argmin(axis=1)
+            rival = np.where(other, energies, np.inf).argmin(axis=1)
             differs = np.take_along_axis(unknown, rival[:, None], axis=1)[:, 0] != first[:, 0]
             screen.dg_kcal[differs & ~single] = np.nan
         bare = self._uncounted[screen.rows]

@@ -22,7 +22,9 @@ if TYPE_CHECKING:
     Flags = NDArray[np.bool_]
 
 Place = Literal["axial", "equatorial"]
-_COMPARISON = re.compile(r"(?P<name>.*?)\s*(?P<sign>>=|<=|>|<)\s*(?P<value>[-+]?[0-9.]+(?:[eE][-+]?\d+)?)\s*(?P<percent>%?)\s*")
+_COMPARISON = re.compile(
+    r"(?P<name>.*?)\s*(?P<sign>>=|<=|>|<)\s*(?P<value>[-+]?[0-9.]+(?:[eE][-+]?\d+)?)\s*(?P<percent>%?)\s*"
+)
 _SIGNS: dict[str, Callable[[Floats, float], Flags]] = {
     ">=": np.greater_equal,
     "<=": np.less_equal,
@@ -119,8 +121,12 @@ class Sieve:
         self._gap = parse_comparison(wish.gap) if wish.gap is not None else None
         if self._gap is not None and (self._gap.name or not self._gap.sign):
             raise UsageError(f"{wish.gap!r} is no condition on the gap.", "Write a sign and a number: >=2.")
-        self._standing = [(place, self._checked(text)) for place in ("axial", "equatorial") for text in getattr(wish, place)]
-        self._pairs = [self._pair(text, same=True) for text in wish.cis] + [self._pair(t, same=False) for t in wish.trans]
+        self._standing = [
+            (place, self._checked(text)) for place in ("axial", "equatorial") for text in getattr(wish, place)
+        ]
+        self._pairs = [self._pair(text, same=True) for text in wish.cis] + [
+            self._pair(t, same=False) for t in wish.trans
+        ]
         self._rank_by = wish.rank_by
         self._ranked = self._number(wish.rank_by.removeprefix("axial:")) if wish.rank_by.startswith("axial:") else 0
         if not self._ranked and wish.rank_by not in ("stability", "bias", "none"):
@@ -145,7 +151,9 @@ class Sieve:
     def _checked(self, text: str) -> tuple[int, Comparison]:
         comparison = parse_comparison(text)
         if comparison.sign and not 0 <= comparison.value <= 1:
-            raise UsageError(f"A share of {comparison.value:g} cannot be.", "Write shares from 0 to 1, or in %: OH>=90%.")
+            raise UsageError(
+                f"A share of {comparison.value:g} cannot be.", "Write shares from 0 to 1, or in %: OH>=90%."
+            )
         return self._number(comparison.name), comparison
 
     # ---- passing ---------------------------------------------------------------------------------------------
@@ -189,7 +197,10 @@ class Sieve:
                 (i, j)
                 for i, a in enumerate(slots)
                 for j, b in enumerate(slots)
-                if a.locant == first and b.locant == second and a.atom != b.atom and _on_same_face(a.face, b.face) is same
+                if a.locant == first
+                and b.locant == second
+                and a.atom != b.atom
+                and _on_same_face(a.face, b.face) is same
             ]
             if not pairs:
                 raise UsageError(

@@ -36,36 +36,61 @@ def patterns(
     context: typer.Context,
     groups: Annotated[
         list[str] | None,
-        typer.Argument(metavar="GROUP...", help="Groups to place, all of them; repeat a name to place it twice.", show_default=False),
+        typer.Argument(
+            metavar="GROUP...",
+            help="Groups to place, all of them; repeat a name to place it twice.",
+            show_default=False,
+        ),
     ] = None,
     choose_from: Annotated[
         str | None,
-        typer.Option("--choose-from", metavar="A,B,C", help="Place some of these besides, each as often as it likes.", show_default=False),
+        typer.Option(
+            "--choose-from",
+            metavar="A,B,C",
+            help="Place some of these besides, each as often as it likes.",
+            show_default=False,
+        ),
     ] = None,
     count: Annotated[
-        str, typer.Option("--count", metavar="N|M:N", help="How many to choose, e.g. 2 or 1:3; only with --choose-from.")
+        str,
+        typer.Option("--count", metavar="N|M:N", help="How many to choose, e.g. 2 or 1:3; only with --choose-from."),
     ] = "1",
     ring: Annotated[
         str,
-        typer.Option("--ring", metavar="NAME|SMILES", help="Parent ring, e.g. oxane, or a SMILES with marked positions."),
+        typer.Option(
+            "--ring", metavar="NAME|SMILES", help="Parent ring, e.g. oxane, or a SMILES with marked positions."
+        ),
     ] = "cyclohexane",
     axial: Annotated[
         list[str] | None,
-        typer.Option("--axial", metavar="GROUP[>=SHARE]", help="Axial in the favoured form, or to this share (one such group at least)."),
+        typer.Option(
+            "--axial",
+            metavar="GROUP[>=SHARE]",
+            help="Axial in the favoured form, or to this share (one such group at least).",
+        ),
     ] = None,
     equatorial: Annotated[
         list[str] | None,
         typer.Option("--equatorial", metavar="GROUP[>=SHARE]", help="The same for equatorial (all such groups)."),
     ] = None,
     locked: Annotated[
-        float | None, typer.Option("--locked", metavar="SHARE", help="One ring shape holds at least this share, e.g. 0.99.", show_default=False)
+        float | None,
+        typer.Option(
+            "--locked", metavar="SHARE", help="One ring shape holds at least this share, e.g. 0.99.", show_default=False
+        ),
     ] = None,
     gap: Annotated[
         str | None,
-        typer.Option("--gap", metavar="CONDITION", help="Gap to the next ring form in the unit of --units, e.g. '>=2'.", show_default=False),
+        typer.Option(
+            "--gap",
+            metavar="CONDITION",
+            help="Gap to the next ring form in the unit of --units, e.g. '>=2'.",
+            show_default=False,
+        ),
     ] = None,
     cis: Annotated[
-        list[str] | None, typer.Option("--cis", metavar="PAIR", help="Two positions (1,2) or groups (Me,OH) on one face.")
+        list[str] | None,
+        typer.Option("--cis", metavar="PAIR", help="Two positions (1,2) or groups (Me,OH) on one face."),
     ] = None,
     trans: Annotated[
         list[str] | None, typer.Option("--trans", metavar="PAIR", help="Two positions or groups on opposite faces.")
@@ -76,7 +101,9 @@ def patterns(
         str, typer.Option("--rank", metavar="ORDER", help="stability, bias (one shape), axial:GROUP, or none.")
     ] = "stability",
     top: Annotated[int | None, typer.Option("--top", metavar="N", help="Only the first N.", show_default=False)] = None,
-    smiles: Annotated[bool, typer.Option("--smiles", help="SMILES lines only, each with its pattern after a tab.")] = False,
+    smiles: Annotated[
+        bool, typer.Option("--smiles", help="SMILES lines only, each with its pattern after a tab.")
+    ] = False,
     temperature: common.TemperatureOption = "298.15",
     medium: common.MediumOption = "nonpolar",
     units: common.UnitsOption = "kcal",
