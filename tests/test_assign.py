@@ -171,6 +171,13 @@ def test_table_names_the_answer_and_the_next_proton(capsys: Capture) -> None:
     assert "look at H" in out
 
 
+def test_table_keeps_the_brackets_of_a_structure(capsys: Capture) -> None:
+    assert run(["assign", "c1cc[nH]c1C1CCC(O)CC1", "--observed", "H9=tt 10.9,4.3", "--format", "table"]) == 0
+    out = capsys.readouterr().out
+    assert "c1cc[nH]c1C1CCC(O)CC1" in out
+    assert "[nH]" in out.partition("fits best")[0]
+
+
 def test_observations_are_needed(capsys: Capture) -> None:
     assert run(["assign", TBU]) == 2
     assert "--observed" in capsys.readouterr().err

@@ -17,6 +17,8 @@ from ringstrain.structure.records import Structure
 from ringstrain.tables import Tables, load_tables
 from ringstrain.tables.spectra import SpectralTables, load_spectra
 
+#: Source key of the coupling equation.
+EQUATION_SOURCE = "haasnoot-et-al-1980"
 #: What holds for every prediction.
 CAVEATS = (
     "Couplings are first order; strongly coupled protons show other spacings.",
@@ -180,7 +182,8 @@ class Spectrum:
                     "uncertainty_Hz": c.uncertainty_Hz,
                     "observable": c.observable,
                     "error_doubled": c.doubled,
-                    "source": "common-practice" if c.count > 1 else "haasnoot-et-al-1980",
+                    "source": "common-practice" if c.count > 1 else EQUATION_SOURCE,
+                    "known_by": "common practice" if c.count > 1 else "read",
                 }
                 for c in signal.couplings
             ],
@@ -206,6 +209,7 @@ def _carbon(shift: CarbonShift) -> dict[str, Any]:
         "gamma_gauche_uncertainty_ppm": shift.gamma_uncertainty_ppm,
         "missing_increments": list(shift.missing),
         "sources": list(shift.sources),
+        "known_by": shift.known_by,
     }
 
 

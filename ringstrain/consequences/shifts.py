@@ -11,6 +11,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 from ringstrain.consequences.averages import Ensemble
+from ringstrain.provenance import KNOWN_BY_ORDER, worst_known
 from ringstrain.results import State, SystemResult
 from ringstrain.ringnames import name_ring
 from ringstrain.tables.spectra import SpectralTables, SpectralValue
@@ -39,6 +40,8 @@ class CarbonShift:
         Groups without increments.
     sources
         Source keys of the numbers used.
+    known_by
+        How the worst known of them is known.
     """
 
     atom: int
@@ -50,6 +53,7 @@ class CarbonShift:
     gamma_uncertainty_ppm: float | None
     missing: tuple[str, ...]
     sources: tuple[str, ...]
+    known_by: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -126,6 +130,7 @@ def _make(
     gamma_error = ensemble.average([math.sqrt(g.variance) for g in gammas])
     lone = any(s is not None for s in sums)
     groups = {s.key for state in result.states for _, s in _standings(result, state, 0)} if lone else set()
+    rows = _rows(groups, tables)
     missing = sorted(key for key in groups if tables.increment(key, "alpha eq") is None)
     return CarbonShift(
         atom=atom,
@@ -136,13 +141,24 @@ def _make(
         gamma_average_ppm=gamma.mean if gamma else None,
         gamma_uncertainty_ppm=math.hypot(gamma_error.mean, gamma.spread) if gamma and gamma_error else None,
         missing=tuple(missing),
-        sources=_sources(groups, tables),
+        sources=_sources(rows),
+        known_by=_known(rows),
     )
 
 
-def _sources(groups: set[str], tables: SpectralTables) -> tuple[str, ...]:
-    rows = [tables.general("base"), *(tables.increment(g, "alpha eq") for g in sorted(groups))]
-    return tuple(dict.fromkeys(row.source for row in rows if row is not None and row.source))
+def _rows(groups: set[str], tables: SpectralTables) -> tuple[SpectralValue, ...]:
+    """The rows that stand for what was used: the parent's and one of each group."""
+    own = (tables.increment(group, "alpha eq") for group in sorted(groups))
+    return (tables.general("base"), *(row for row in own if row is not None))
+
+
+def _sources(rows: Sequence[SpectralValue]) -> tuple[str, ...]:
+    return tuple(dict.fromkeys(row.source for row in rows if row.source))
+
+
+def _known(rows: Sequence[SpectralValue]) -> str:
+    """How the worst known row is known."""
+    return worst_known(word for word in KNOWN_BY_ORDER if any(row.known_by == word for row in rows))
 
 
 def _standings(result: SystemResult, state: State, ring: int) -> list[tuple[int, _Standing]]:
@@ -227,6 +243,6 @@ def _methyl_shifts(result: SystemResult, ensemble: Ensemble, tables: SpectralTab
             sums.append(total)
         nothing = [_Sum(0.0, 0.0) for _ in result.states]
         shift = _make(standing.atom, sums, nothing, ensemble, result, tables)
-        own = tables.increment("methyl", "own eq")
-        found.append(replace(shift, missing=(), sources=(own.source,) if own is not None else ()))
+        rows = [row for side in ("eq", "ax") if (row := tables.increment("methyl", f"own {side}")) is not None]
+        found.append(replace(shift, missing=(), sources=_sources(rows), known_by=_known(rows)))
     return found

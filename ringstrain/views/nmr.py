@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from ringstrain.consequences.couplings import EXCHANGES
 from ringstrain.consequences.freezing import FreezingOut
-from ringstrain.consequences.nmr import Signal, Spectrum
+from ringstrain.consequences.nmr import EQUATION_SOURCE, Signal, Spectrum
 from ringstrain.consequences.shifts import CarbonShift
 from ringstrain.consequences.spectra_inverse import PopulationEstimate
 from ringstrain.provenance import Source
@@ -127,7 +127,7 @@ def multiplet_table(spectrum: Spectrum, number: int, look: Look, notes: Footnote
     table = new_table(look)
     table.add_column("hydrogen", overflow="fold", min_width=8, max_width=24)
     table.add_column("signal", no_wrap=True)
-    table.add_column(f"3J / Hz (partner) {notes.mark('haasnoot-et-al-1980')}", overflow="fold")
+    table.add_column(f"3J / Hz (partner) {notes.mark(EQUATION_SOURCE)}", overflow="fold")
     table.add_column("W / Hz", justify="right", no_wrap=True)
     for members in alike_sets(spectrum, number):
         signal = members[0]
@@ -220,7 +220,8 @@ def _carbons(spectrum: Spectrum, number: int, look: Look, notes: Footnotes) -> I
     yield look.text("")
     if known:
         marks = " ".join(dict.fromkeys(notes.mark(key) for c in known for key in c.sources))
-        yield look.text(f"13C from increments {marks}")
+        words = listed(tuple(dict.fromkeys(c.known_by for c in known)))
+        yield look.text(f"13C from increments, {words} {marks}")
         table = new_table(look)
         table.add_column("carbon", no_wrap=True)
         for state in shown:
@@ -282,11 +283,12 @@ def freezing_lines(block: FreezingOut | None, result: SystemResult, look: Look, 
         other = "alike" if not block.dG_kcal else f"back {look.energy(block.reverse_barrier_kcal)}"
         word = ", estimated for the substituted ring" if block.barrier.estimated else ""
         placed = f"; exchange {block.exchange} at the temperature asked" if block.exchange else ""
+        rates = f"{_rate(block.rate_per_s)} per s ({_rate(block.rate_low)} to {_rate(block.rate_high)})"
+        origin = f"{block.barrier.ring}, {block.barrier.known_by}{word} {notes.mark(block.barrier.source)}"
         yield (
             f"Freezing out ({block.convention}): barrier {block.favoured} to {block.other} "
-            f"{look.energy(block.barrier_kcal)} {_PM} {half} {look.unit} ({other}), from {block.barrier.ring}{word} "
-            f"{notes.mark(block.barrier.source)}; rate {_rate(block.rate_per_s)} per s ({_rate(block.rate_low)} to "
-            f"{_rate(block.rate_high)}){placed}."
+            f"{look.energy(block.barrier_kcal)} {_PM} {half} {look.unit} ({other}), from {origin}; "
+            f"rate {rates}{placed}."
         )
         if block.coalescence_K is not None:
             share = block.favoured_share or 0.5

@@ -1,0 +1,1 @@
+"""What follows from chairs and populations at the bench, one question a module."""
