@@ -117,7 +117,10 @@ class _Painter:
         text = "".join(_marked(text, script) for text, script in runs)
         box = item.box
         if item.kind != "caption":
-            corners = ((box[0], box[1]), (box[2], box[1]), (box[2], box[3]), (box[0], box[3]))
+            # Small numbers stand close to bonds, so that only their middle is cleared.
+            dx, dy = (0.25 * (box[2] - box[0]), 0.25 * (box[3] - box[1])) if item.kind == "number" else (0.0, 0.0)
+            left, top, right, low = box[0] + dx, box[1] + dy, box[2] - dx, box[3] - dy
+            corners = ((left, top), (right, top), (right, low), (left, low))
             self._fill(corners, "paper")
         align, x = {"start": (1, box[0]), "end": (2, box[2])}.get(item.anchor, (0, (box[0] + box[2]) / 2))
         for place, (number, script) in enumerate(item.runs):

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import Literal
 
 Role = Literal[
@@ -169,8 +169,11 @@ def runs_width(runs: Iterable[Run], size: float) -> float:
 def moved(item: Item, dx: float, dy: float) -> Item:
     """An item shifted."""
     if isinstance(item, Label):
-        return replace(item, x=item.x + dx, y=item.y + dy)
-    return replace(item, points=tuple((x + dx, y + dy) for x, y in item.points))
+        return Label(item.x + dx, item.y + dy, item.runs, item.role, item.size, item.anchor, item.bold, item.kind)
+    points = tuple((x + dx, y + dy) for x, y in item.points)
+    if isinstance(item, Stroke):
+        return Stroke(points, item.role, item.width, item.dash, item.casing, item.arrow)
+    return Shape(points, item.role, item.radius, item.filled, item.width)
 
 
 def bounds(items: Iterable[Item]) -> Box:
@@ -200,14 +203,19 @@ def overlap(a: Box, b: Box, gap: float = 0.0) -> float:
 def crosses(box: Box, start: tuple[float, float], end: tuple[float, float]) -> bool:
     """True when a segment passes through a rectangle."""
     x0, y0 = start
-    dx, dy = end[0] - x0, end[1] - y0
+    x1, y1 = end
+    left, top, right, low_edge = box
+    # Most segments lie wholly on one side.
+    if (x0 < left and x1 < left) or (x0 > right and x1 > right):
+        return False
+    if (y0 < top and y1 < top) or (y0 > low_edge and y1 > low_edge):
+        return False
+    dx, dy = x1 - x0, y1 - y0
     low, high = 0.0, 1.0
-    for origin, step, left, right in ((x0, dx, box[0], box[2]), (y0, dy, box[1], box[3])):
+    for origin, step, first, last in ((x0, dx, left, right), (y0, dy, top, low_edge)):
         if abs(step) < 1e-9:
-            if origin < left or origin > right:
-                return False
             continue
-        t0, t1 = (left - origin) / step, (right - origin) / step
+        t0, t1 = (first - origin) / step, (last - origin) / step
         if t0 > t1:
             t0, t1 = t1, t0
         low, high = max(low, t0), min(high, t1)

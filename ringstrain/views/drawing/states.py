@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from ringstrain.analysis import State, SystemResult
 from ringstrain.contacts import ContactKind
@@ -183,7 +183,9 @@ class _Drawing:
                 continue
             x, y = self.point(atom)
             runs: tuple[Run, ...] = tuple((p, "sup" if p in ("+", "\N{MINUS SIGN}") else "") for p in pieces)
-            label = Label(x - 0.36 * SIZE, y + 0.36 * SIZE, runs, "ink", SIZE, "start", False, "atom")
+            label = Label(x, y + 0.36 * SIZE, runs, "ink", SIZE, "middle", False, "atom")
+            if len(runs) > 1:
+                label = replace(label, x=x - 0.36 * SIZE, anchor="start")
             self.board.boxes.append(label.box)
             self.top.append(label)
 
@@ -294,11 +296,13 @@ class _Drawing:
     # ---- numbers and marks ----
 
     def _numbers(self) -> None:
+        done: set[int] = set()
         for ring in [*(r.atoms for r in self.result.system.rings), *self.model.side_rings]:
             middle = self._middle(ring)
             for atom in ring:
-                if any(label.kind == "number" and label.text == str(atom + 1) for label in self._labels()):
+                if atom in done:
                     continue
+                done.add(atom)
                 x, y = self.point(atom)
                 base = math.atan2(middle[1] - y, middle[0] - x)
                 reach = 11.0 + (5.0 if self.symbols[atom] else 0.0)
@@ -307,9 +311,6 @@ class _Drawing:
                     for turn in (0.0, 0.5, -0.5, 1.0, -1.0, 1.6, -1.6, 2.2, -2.2, 3.14)
                 )
                 self.top.append(write_number(self.board, (x, y), ways, str(atom + 1), _NUMBER_SIZE))
-
-    def _labels(self) -> list[Label]:
-        return [item for item in self.top if isinstance(item, Label)]
 
     def _marks(self) -> list[Item]:
         marks: list[Item] = []

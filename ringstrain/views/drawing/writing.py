@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass, field
 
 from ringstrain.views.drawing.labels import runs_of
-from ringstrain.views.drawing.scene import Box, Label, Role, Run, crosses, overlap, runs_width
+from ringstrain.views.drawing.scene import Anchor, Box, Label, Role, Run, crosses, overlap, runs_width
 
 Point = tuple[float, float]
 
@@ -14,6 +14,8 @@ Point = tuple[float, float]
 STRETCHES = (1.0, 1.2, 1.45, 1.75, 2.1, 2.5, 3.0, 3.6)
 #: Clear space around a label [px].
 CLEARANCE = 2.5
+#: Clear space between a label and a bond that does not lead to it [px].
+LINE_CLEARANCE = 2.0
 #: What writing on another label costs, against at most a few hundred for anything else [-].
 LABEL_COST = 1000.0
 _Form = tuple[bool, tuple[Run, ...], float]
@@ -46,15 +48,31 @@ class Board:
     def cost(self, box: Box, root: Point | None = None, tip: Point | None = None) -> float:
         """How badly a label here would collide: with labels, its bond with labels, bonds with it."""
         total = 0.0
+        left, top, right, low = box
         for other in self.boxes:
-            shared = overlap(box, other, CLEARANCE)
-            if shared:
-                total += LABEL_COST + shared
-        for start, end in self.segments:
-            if start != root and end != root and crosses(box, start, end):
-                total += 60.0
-            elif root is not None and (start == root or end == root) and crosses(box, start, end):
-                total += 40.0
+            # Written out, since most pairs are far apart and this is where drawing spends its time.
+            if (
+                other[0] < right + CLEARANCE
+                and other[2] > left - CLEARANCE
+                and other[1] < low + CLEARANCE
+                and other[3] > top - CLEARANCE
+            ):
+                total += LABEL_COST + overlap(box, other, CLEARANCE)
+        left, top, right, low = (
+            left - LINE_CLEARANCE,
+            top - LINE_CLEARANCE,
+            right + LINE_CLEARANCE,
+            low + LINE_CLEARANCE,
+        )
+        for segment in self.segments:
+            (x0, y0), (x1, y1) = segment
+            if (x0 < left and x1 < left) or (x0 > right and x1 > right):
+                continue
+            if (y0 < top and y1 < top) or (y0 > low and y1 > low):
+                continue
+            own = root is not None and root in segment
+            if crosses(box if own else (left, top, right, low), *segment):
+                total += 40.0 if own else 60.0
         if root is not None and tip is not None:
             for other in self.boxes:
                 if crosses(other, root, tip):
@@ -132,7 +150,10 @@ def _best_place(
         for order, (turned, runs, atom_width) in enumerate(forms):
             # The end that the bond points at is held fast, so that another face shifts only the far end.
             x = tip[0] + atom_width / 2 if turned else tip[0] - atom_width / 2
-            label = Label(x, tip[1] + 0.36 * size, runs, role, size, "end" if turned else "start", bold, kind)
+            anchor: Anchor = "end" if turned else "start"
+            if len(runs) == 1 and len(runs[0][0]) == 1:
+                x, anchor = tip[0], "middle"
+            label = Label(x, tip[1] + 0.36 * size, runs, role, size, anchor, bold, kind)
             end = _trimmed(root, tip, atom_width, size)
             cost = board.cost(label.box, root, end) + 9.0 * rank + 5.0 * order
             if best is None or cost < best[0]:
@@ -159,7 +180,7 @@ def _trimmed(root: Point, tip: Point, wide: float, size: float) -> Point:
     dx, dy = root[0] - tip[0], root[1] - tip[1]
     length = math.hypot(dx, dy) or 1.0
     across, up = abs(dx) / length, abs(dy) / length
-    back = min((0.5 * wide + 2.0) / max(across, 1e-6), 0.64 * size / max(up, 1e-6), 0.7 * length)
+    back = min((0.5 * wide + 3.2) / max(across, 1e-6), 0.64 * size / max(up, 1e-6), 0.7 * length)
     return tip[0] + back * dx / length, tip[1] + back * dy / length
 
 
