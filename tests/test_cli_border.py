@@ -91,7 +91,12 @@ def test_faulty_tables_end_with_6(monkeypatch: pytest.MonkeyPatch, capfd: pytest
 
 @pytest.mark.skipif(os.name == "nt", reason="signals are POSIX")
 def test_a_real_interrupt_ends_the_process_with_130() -> None:
-    process = subprocess.Popen([*PROGRAM, "chairs", "-"], stdin=subprocess.PIPE, stderr=subprocess.PIPE)
+    # A shell starts its background jobs deaf to the interrupt, and so are the tests when one of them runs them.
+    before = signal.signal(signal.SIGINT, signal.default_int_handler)
+    try:
+        process = subprocess.Popen([*PROGRAM, "chairs", "-"], stdin=subprocess.PIPE, stderr=subprocess.PIPE)
+    finally:
+        signal.signal(signal.SIGINT, before)
     time.sleep(1.5)
     process.send_signal(signal.SIGINT)
     _, err = process.communicate(timeout=20)
