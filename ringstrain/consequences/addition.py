@@ -116,7 +116,20 @@ def _onium(scene: Scene, request: Request, a: int, b: int) -> list[Option]:
                 break
         if len(_half_chairs(scene, ring)) == 1:
             found.append(_diequatorial(scene, state, found[-1], (a, -at_a, electrophile), (b, -at_b, nucleophile)))
+    if not alike:
+        found = _markovnikov(scene, found, a, b)
     return _with_equilibrium(scene, found)
+
+
+def _markovnikov(scene: Scene, found: list[Option], a: int, b: int) -> list[Option]:
+    """Where an open half-chair lets the nucleophile reach the more substituted carbon, only that has a share."""
+    counts = {c: len(scene.structure.neighbours[c]) for c in (a, b)}
+    if counts[a] == counts[b]:
+        return found
+    rich = max((a, b), key=lambda c: counts[c])
+    if not any(o.finding.partner_atoms == (rich,) and o.finding.verdict == "open" for o in found):
+        return found
+    return [o if o.finding.partner_atoms == (rich,) else replace(o, weight=None) for o in found]
 
 
 def _diequatorial(

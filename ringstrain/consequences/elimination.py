@@ -134,7 +134,7 @@ def _of_pair(scene: Scene, pair: _Pair, request: Request) -> Option:
         f"In state {state.id} {scene.describe(state, leaving.carbon, leaving.atom)} ({leaving.name}) and {hydrogen} "
         f"are anti (torsion {torsion:.0f} degrees)."
     )
-    confidence: Confidence = "direction only" if hofmann and branching else "order of magnitude"
+    confidence: Confidence = "direction only" if hofmann else "order of magnitude"
     product = alkene(scene, ((leaving.carbon, leaving.atom), (n, pair.partner)), (leaving.carbon, n))
     finding = Finding(
         reaction="e2",

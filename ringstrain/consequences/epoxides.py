@@ -83,7 +83,11 @@ def _openings(scene: Scene, request: Request, a: int, b: int, oxygen: int) -> li
         kept = a if at_a == face else b
         attacked = b if kept == a else a
         blocked = uneven and not acid and full[attacked] and len(reached) > 1
-        clash = uneven and acid and not full[attacked]
+        ready_full = next((s for at, s in reached.items() if full[at]), None)
+        if uneven and acid and ready_full is not None and cost[ready_full.id] < LEVEL:
+            # The diaxial rule and the more substituted carbon agree on the best half-chair: clean.
+            blocked = not full[attacked]
+        clash = uneven and acid and not full[attacked] and not blocked
         limits = _limits(scene, a, b)
         if uneven and not acid and full[attacked]:
             limits += (

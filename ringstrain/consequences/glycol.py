@@ -8,7 +8,7 @@ from ringstrain.consequences.request import Request
 from ringstrain.consequences.rulebook import rule
 from ringstrain.consequences.scene import Scene, has_boat, numbers
 from ringstrain.errors import UsageError
-from ringstrain.structure.edit import Draft
+from ringstrain.structure.edit import Draft, constitution_ranks
 
 CAUTION = "Lead salts are toxic, periodates are oxidisers. Follow local rules and ask a qualified colleague."
 REAGENTS = ("lead tetraacetate", "periodate")
@@ -35,10 +35,12 @@ def options(scene: Scene, request: Request) -> list[Option]:
     if reagent not in REAGENTS:
         raise UsageError(f"Reagent {reagent!r} does not cleave glycols.", f"Use one of {', '.join(REAGENTS)}.")
     pairs = alcohols(scene)
+    # The epimer is taken at the carbon of lower rank, so that it does not depend on the numbering.
+    ranks = constitution_ranks(scene.structure)
     found: list[Option] = []
     for c1, o1 in pairs:
         for c2, o2 in pairs:
-            if c1 < c2 and c2 in scene.ring_neighbours(c1):
+            if ranks[c1] <= ranks[c2] and c2 in scene.ring_neighbours(c1) and (ranks[c1] < ranks[c2] or c1 < c2):
                 found.extend(_pair(scene, reagent, (c1, o1), (c2, o2)))
     return found
 

@@ -13,8 +13,10 @@ from ringstrain.consequences.request import Request
 from ringstrain.consequences.scene import Scene, numbers
 from ringstrain.structure.edit import Draft
 
-CAUTION = "Lewis acids fume and burn; allylsilanes and stannanes are flammable or toxic. Follow local rules and "
-"ask a qualified colleague."
+CAUTION = (
+    "Lewis acids fume and burn; allylsilanes and stannanes are flammable or toxic. Follow local rules and ask a "
+    "qualified colleague."
+)
 
 
 def attack(scene: Scene, request: Request, carbon: int, oxygen: int, leaving: int) -> list[Option]:

@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from ringstrain.analysis import State
 from ringstrain.consequences.finding import Finding, Option
-from ringstrain.consequences.functional import Leaving, is_hydroxyl, leaving_groups, syn_leaving
+from ringstrain.consequences.functional import Leaving, is_hydroxyl, leaving_groups, leaving_name, syn_leaving
 from ringstrain.consequences.oxocarbenium import attack
 from ringstrain.consequences.products import displaced
 from ringstrain.consequences.request import Request
@@ -30,14 +30,22 @@ def options(scene: Scene, request: Request) -> list[Option]:
         Nucleophile (the solvent); OH is written when none is given.
     """
     found: list[Option] = []
-    for leaving in leaving_groups(scene, outside=False):
+    groups = leaving_groups(scene, outside=False)
+    if any(group.kind != "halide" for group in groups):
+        # A sulfonate or nitrogen ionises long before a halide does (common practice).
+        groups = tuple(group for group in groups if group.kind != "halide")
+    for leaving in groups:
         states = [s for s in scene.states if not has_boat(s)] or list(scene.states)
         captured = _by_hydroxymethyl(scene, request, leaving, states)
         found.extend(captured)
-        found.extend(o for s in states for o in _by_lone_pair(scene, request, leaving, s))
+        helped = [o for s in states for o in _by_lone_pair(scene, request, leaving, s)]
+        own = list(helped)
         for state in states:
             for option in (*_by_hydride(scene, request, leaving, state), _alone(scene, request, leaving, state)):
-                found.append(replace(option, weight=None) if captured else option)
+                own.append(replace(option, weight=None) if captured else option)
+        # A factor measured for acetate tells no rate of another donor beside its epimer.
+        borrowed = any(o.weight is not None and o.finding.confidence == "direction only" for o in helped)
+        found.extend(replace(o, centres=()) if borrowed else o for o in own)
     found.extend(_acetals(scene, request))
     return found
 
@@ -208,6 +216,7 @@ def _by_lone_pair(scene: Scene, request: Request, leaving: Leaving, state: State
             and not is_hydroxyl(structure, x)
             and not _donor(scene, x, n)
             and x != leaving.atom
+            and leaving_name(structure, n, x) is None
             and syn_leaving(structure, n, x) is None
         ]
         if methoxy and scene.is_anti(state, methoxy[0], n, carbon, leaving.atom):

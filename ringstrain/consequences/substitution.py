@@ -55,8 +55,8 @@ def _of_state(scene: Scene, request: Request, leaving: Leaving, state: State) ->
             weight, sigma = scene.shares[state.id] * factor.number, factor.sigma_ln
             limits.append("E2 competes when a base finds the anti hydrogens beside an axial leaving group.")
         else:
-            why = f"{scene.describe(state, carbon, leaving.atom)}: the back is the axial side, with syn-axial "
-            "hydrogens in the way"
+            where = scene.describe(state, carbon, leaving.atom)
+            why = f"{where}: the back is the axial side, with syn-axial hydrogens in the way"
             face = -scene.face(carbon, leaving.atom, ring)
             blockers = scene.syn_axial(state, carbon, face, ring)
             if blockers:

@@ -59,6 +59,12 @@ def inverted(structure: Structure, atoms: Iterable[int]) -> Structure:
     return replace(structure, configurations=tuple(configurations))
 
 
+def constitution_ranks(structure: Structure) -> tuple[int, ...]:
+    """A rank for each atom that does not depend on numbering; like atoms share one, configurations do not enter."""
+    with rdBase.BlockLogs():
+        return tuple(Chem.CanonicalRankAtoms(to_rdkit(structure), breakTies=False, includeChirality=False))
+
+
 def mirror(structure: Structure) -> Structure:
     """The mirror image; numbering stays."""
     return inverted(structure, (i for i, c in enumerate(structure.configurations) if c is not None))
