@@ -119,6 +119,20 @@ def test_numbering_of_equal_places_does_not_matter() -> None:
     assert first.candidates[0].smiles == read("C[C@H]1CCC[C@@H](C)C1").smiles
 
 
+def test_isomers_that_give_one_pattern_are_called_equal(capsys: Capture) -> None:
+    """An equatorial hydrogen between two axial ones stands in several inositols (common practice, no source)."""
+    arguments = ["OC1C(O)C(O)C(O)C(O)C1O", "--observed", "H2=2.9,2.9", "--medium", "water"]
+    assert run(["assign", *arguments, "--format", "table"]) == 0
+    out = " ".join(capsys.readouterr().out.split())
+    assert "fit equally well" in out
+    assert "interchangeable numbers" in out
+
+
+def test_numbers_stay_as_drawn_where_that_fits_as_well_as_any() -> None:
+    answer = assign(read(TRANS), parse_observed("H8=10.9,4.3; H10=12,4"))
+    assert answer.candidates[0].atoms == (7, 9)
+
+
 def test_both_hydrogens_of_a_ch2_may_be_named_and_given_in_either_order() -> None:
     structure = read(TBU)
     one = assign(structure, parse_observed("H7=4.7,3.8,2.6; H7'=14.4,11.4,3.8"))

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 import networkx as nx
 
+from ringstrain.advice import relation_words
 from ringstrain.analysis import analyze
 from ringstrain.consequences.assignment import Assignment, Candidate, NextProton, Unranked, Verdict
 from ringstrain.consequences.nmr import Signal, find_signals
@@ -122,7 +123,7 @@ def assign(
         verdict=_verdict(ranked[0], odds),
         odds=odds,
         next_proton=_next_proton(scored, observations, rows) if len(scored) > 1 else None,
-        notes=_notes(unranked),
+        notes=_notes(unranked, renumbered=not candidates and any(not _as_drawn(s, observations) for s in scored[:2])),
     )
 
 
@@ -134,8 +135,15 @@ def _verdict(best: Candidate, odds: float | None) -> Verdict:
     return "decided" if odds >= DECIDED_ODDS else "not decided"
 
 
-def _notes(unranked: Sequence[Unranked]) -> tuple[str, ...]:
+def _as_drawn(scored: _Scored, observations: Sequence[Observation]) -> bool:
+    """True when the observed protons kept their numbers."""
+    return all(scored.mapping[o.atom] == o.atom for o in observations)
+
+
+def _notes(unranked: Sequence[Unranked], *, renumbered: bool) -> tuple[str, ...]:
     notes = ["No isomer is preferred beforehand: stability does not enter the ranking."]
+    if renumbered:
+        notes.append("Equal places of the skeleton carry interchangeable numbers; labels count as the isomer is drawn.")
     if unranked:
         notes.append(f"{len(unranked)} candidate{'s' if len(unranked) > 1 else ''} could not be ranked.")
     return tuple(notes)
@@ -242,6 +250,9 @@ def _mappings(
         first, second, node_match=lambda a, b: a["kind"] == b["kind"], edge_match=lambda a, b: a["order"] == b["order"]
     )
     seen: set[tuple[int, ...]] = set()
+    if structure.atoms == candidate.atoms and structure.bonds == candidate.bonds:
+        seen.add(tuple(o.atom for o in observations))
+        yield {int(atom): int(atom) for atom in structure.fragment}
     for number, mapping in enumerate(matcher.isomorphisms_iter()):
         if number >= MAX_MAPPINGS:
             return
@@ -267,6 +278,7 @@ def _candidate(scored: _Scored, share: float) -> Candidate:
     count = sum(max(1, len(fit.pairings)) for fit in scored.fits)
     return Candidate(
         smiles=scored.entry.structure.smiles,
+        relation=relation_words(scored.entry.structure),
         inverted_atoms=scored.entry.inverted_atoms,
         likelihood=share,
         log_likelihood=scored.log_likelihood,

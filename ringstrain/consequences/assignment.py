@@ -20,6 +20,8 @@ class Candidate:
     ----------
     smiles
         The isomer.
+    relation
+        Cis and trans in words and the face of each centre.
     inverted_atoms
         Centres to invert from the input; None for a candidate given on its own or when the input left centres open.
     likelihood
@@ -35,6 +37,7 @@ class Candidate:
     """
 
     smiles: str
+    relation: str
     inverted_atoms: tuple[int, ...] | None
     likelihood: float
     log_likelihood: float
@@ -46,6 +49,7 @@ class Candidate:
         """The candidate as the JSON of an assign document shows it."""
         return {
             "smiles": self.smiles,
+            "relation": self.relation,
             "inverted_atoms": None if self.inverted_atoms is None else list(self.inverted_atoms),
             "likelihood": self.likelihood,
             "log_likelihood": self.log_likelihood,

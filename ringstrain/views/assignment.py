@@ -17,6 +17,8 @@ if TYPE_CHECKING:
 
 #: Odds above this are not worth a figure: errors of the model are not normal that far out [-].
 MOST_ODDS = 1e4
+#: Odds below this are called equal [-].
+EQUAL_ODDS = 1.05
 
 
 def odds_text(odds: float) -> str:
@@ -34,6 +36,8 @@ def headline(assignment: Assignment) -> str:
     second = assignment.candidates[1].smiles
     if assignment.verdict == "decided":
         return f"{best.smiles} fits best, {odds_text(assignment.odds)} against {second}."
+    if assignment.odds < EQUAL_ODDS:
+        return f"Not decided: {best.smiles} and {second} fit equally well."
     return f"Not decided: {best.smiles} is ahead of {second} by {odds_text(assignment.odds)} only."
 
 
@@ -89,7 +93,7 @@ def assignment_view(assignment: Assignment, look: Look, most: int) -> Iterator[R
     for place, candidate in enumerate(shown, 1):
         table.add_row(
             str(place),
-            look.text(candidate.smiles),
+            look.text(f"{candidate.smiles}  {candidate.relation}".rstrip()),
             look.text(_inverted(candidate)),
             look.text(percent(candidate.likelihood)),
             look.text(f"{candidate.mean_square**0.5:.1f}"),
