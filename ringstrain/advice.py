@@ -5,10 +5,10 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from ringstrain.epimers import cip_labels
 from ringstrain.geometry import Geometry, neighbour_orders
 from ringstrain.ranking import Isomer, Ranking
 from ringstrain.ringgraph import find_ring_systems
+from ringstrain.structure.cip import cip_labels
 from ringstrain.structure.records import Structure
 from ringstrain.units import R_KCAL, Z95
 

@@ -1,4 +1,4 @@
-"""Which centres can be inverted at the bench, and what they are called."""
+"""Which centres can be inverted at the bench."""
 
 from __future__ import annotations
 
@@ -66,25 +66,3 @@ def _is_acidified(structure: Structure, atom: int) -> bool:
         if record.number == 16 and sum(structure.atoms[m].number == 8 for m in doubles) >= 1:
             return True
     return False
-
-
-def cip_labels(structure: Structure) -> dict[int, str]:
-    """CIP label (R, S, r or s) of each centre that has one.
-
-    Parameters
-    ----------
-    structure
-        The molecule.
-
-    Returns
-    -------
-    dict
-        Label by atom.
-    """
-    from rdkit.Chem import rdCIPLabeler
-
-    from ringstrain.structure.write import to_rdkit
-
-    mol = to_rdkit(structure)
-    rdCIPLabeler.AssignCIPLabels(mol)
-    return {a.GetIdx(): a.GetProp("_CIPCode") for a in mol.GetAtoms() if a.HasProp("_CIPCode")}

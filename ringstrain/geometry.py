@@ -106,6 +106,14 @@ class Geometry:
     system: RingSystem
     orders: dict[int, tuple[int, int, int, int]]
 
+    def __eq__(self, other: object) -> bool:
+        if not isinstance(other, Geometry):
+            return NotImplemented
+        return (self.structure, self.system, self.orders) == (other.structure, other.system, other.orders)
+
+    def __hash__(self) -> int:
+        return hash((self.structure.text, self.system.atoms))
+
     @cached_property
     def sites(self) -> tuple[tuple[tuple[Site, ...], ...], ...]:
         """Sites by ring and place: two on a tetrahedral atom, one or none on a planar one."""

@@ -378,7 +378,7 @@ def _symmetry_word(structure: Structure, pile: _Pile) -> SymmetryWord:
     """What the entry is as a whole."""
     if pile.chiral:
         return "racemic" if pile.paired else "single enantiomer"
-    from ringstrain.epimers import cip_labels
+    from ringstrain.structure.cip import cip_labels
 
     return "meso" if any(label in "RS" for label in cip_labels(structure).values()) else "achiral"
 

@@ -161,9 +161,9 @@ def _why_nothing(structure: Structure, sixes: list[tuple[int, ...]], fragment: f
             "The six-membered rings are all aromatic and flat.",
             "Give a molecule with a saturated six-membered ring.",
         )
-    if _cycles_of_six(structure, {int(a) for ring in rings if len(ring) < 6 for a in ring}):
+    if _cycles_of_six(structure, {int(a) for ring in rings if len(ring) == 5 for a in ring}):
         return (
-            "The only six-membered ring is the boat around a one-atom bridge, where exo and endo have no price.",
+            "There is no six-membered ring but the boat around a one-atom bridge, where exo and endo have no price.",
             "Give a molecule with a saturated six-membered ring of its own.",
         )
     sizes = ", ".join(str(size) for size in sorted({len(ring) for ring in rings}))

@@ -118,13 +118,7 @@ HOMES = {
 }
 
 
-def excused(*names: str) -> list[object]:
-    """All modules, those with a known fault marked."""
-    fault = pytest.mark.xfail(strict=True, reason="CIP labels belong into structure/")
-    return [pytest.param(path, id=name_of(path), marks=[fault] if name_of(path) in names else []) for path in MODULES]
-
-
-@pytest.mark.parametrize("path", excused("epimers"))
+@pytest.mark.parametrize("path", MODULES, ids=name_of)
 def test_outside_packages_stay_where_they_belong(path: Path) -> None:
     home = name_of(path).split(".")[0]
     for name in imports(path):

@@ -117,7 +117,6 @@ def test_an_analysis_survives_pickling(text: str) -> None:
     assert repr(again) == repr(analysis)
 
 
-@pytest.mark.xfail(strict=True, reason="Geometry compares by identity")
 def test_equality_is_by_content() -> None:
     first, second = ringstrain.analyze("CC1CCCCC1"), ringstrain.analyze("CC1CCCCC1")
     assert first == second

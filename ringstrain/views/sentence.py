@@ -111,7 +111,8 @@ def _cost(result: SystemResult, equilibrium: Equilibrium, lines: list[Line], loo
     if equilibrium.uncertainty_kcal:
         half = Z95 * equilibrium.uncertainty_kcal
         low, high = equilibrium.dG_kcal - half, equilibrium.dG_kcal + half
-        remarks.append(f"{short_energy(low, look)} to {short_energy(high, look)}")
+        ends = (low, high) if equilibrium.dG_kcal >= 0 else (-high, -low)
+        remarks.append(f"{short_energy(ends[0], look)} to {short_energy(ends[1], look)}")
     weak = _weakest(result, equilibrium, lines)
     if weak:
         remarks.append(weak)
@@ -123,7 +124,15 @@ def _cost(result: SystemResult, equilibrium: Equilibrium, lines: list[Line], loo
     else:
         words = describe(result, other) if set(other.shapes) == {"chair"} else ""
         where = f", {words}," if words else ""
-        clause = f"next comes {_lower(form_name(other, bare=bool(words)))}{where or ','} {amount} higher{tail}"
+        name = _lower(form_name(other, bare=bool(words)))
+        if equilibrium.dG_kcal < 0:
+            lead = short_energy(-equilibrium.dG_kcal, look)
+            clause = (
+                f"{name} and its equivalents{where or ','} lie higher each but together outweigh it by "
+                f"{lead} {look.unit}{tail}"
+            )
+        else:
+            clause = f"next comes {name}{where or ','} {amount} higher{tail}"
     if low >= 0:
         return clause
     return clause + (", too close to call" if equilibrium.dG_kcal < _CLOSE_KCAL else ", likely but not certain")
@@ -207,9 +216,7 @@ def _locked(result: SystemResult, conditions: Conditions) -> str:
     return text + "."
 
 
-def _bounded(
-    result: SystemResult, equilibrium: Equilibrium, who: str, at: str, lines: list[Line], look: Look
-) -> str:
+def _bounded(result: SystemResult, equilibrium: Equilibrium, who: str, at: str, lines: list[Line], look: Look) -> str:
     """A contact nobody can price decides how much can be said."""
     missing = listed([line_words(result, line) for line in lines if line.value_kcal is None])
     verb = "have" if " and " in missing else "has"
@@ -219,9 +226,7 @@ def _bounded(
     if equilibrium.bound == "at least":
         return f"{who}: favoured {at}; {step} costs at least {known} ({missing} {verb} no price)."
     if equilibrium.bound == "at most":
-        return (
-            f"{who}: ahead by at most {known} {at}, and the order may turn round, because {missing} {verb} no price."
-        )
+        return f"{who}: ahead by at most {known} {at}, and the order may turn round, because {missing} {verb} no price."
     kind = "chair" if set(favoured.shapes) == {"chair"} else "form"
     return (
         f"Which {kind} wins {at} is not determined, because {missing} {verb} no price; "
