@@ -155,12 +155,14 @@ def _of_pair(scene: Scene, pair: _Pair, request: Request) -> Option:
         reagent=f"{request.base_size} base",
         sources=tuple(dict.fromkeys((*used.sources, "cristol-1947", "winstein-holness-1955"))),
     )
+    relief = _relief_ln(scene, pair)
     return Option(
         finding=finding,
         weight=weight,
         sigma_ln=scene.sigma_ln(state, spread),
         centres=(leaving.carbon,),
-        relief_ln=_relief_ln(scene, pair),
+        relief_ln=relief,
+        relief_sigma=relief * rule("e2-relief").sigma_ln,
     )
 
 

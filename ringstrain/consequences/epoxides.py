@@ -12,7 +12,7 @@ from collections.abc import Sequence
 
 from ringstrain.analysis import State
 from ringstrain.consequences.finding import Confidence, Finding, Option
-from ringstrain.consequences.functional import alcohols, epoxides, leaving_groups
+from ringstrain.consequences.functional import alcohols, epoxides, is_acetal_carbon, leaving_groups
 from ringstrain.consequences.products import opened_epoxide, remove_branch, turn
 from ringstrain.consequences.request import Request
 from ringstrain.consequences.rulebook import rule
@@ -219,7 +219,7 @@ def closures(scene: Scene) -> list[Option]:
                 found.extend(_closure(scene, carbon, oxygen, leaving.carbon, leaving.atom, leaving.name))
     if found:
         return found
-    pairs = alcohols(scene)
+    pairs = [(c, o) for c, o in alcohols(scene) if not is_acetal_carbon(structure, c)]
     for carbon, oxygen in pairs:
         for other, far in pairs:
             if other in scene.ring_neighbours(carbon) and structure.atoms[other].hydrogens:

@@ -154,6 +154,8 @@ class Option:
         Ring atoms whose epimer the rate is compared with; empty when no comparison makes sense.
     relief_ln
         Strain the departing atoms take with them, over RT [-]; it enters rates, not shares.
+    relief_sigma
+        Standard uncertainty of that [-].
     """
 
     finding: Finding
@@ -161,6 +163,7 @@ class Option:
     sigma_ln: float = 0.0
     centres: tuple[int, ...] = ()
     relief_ln: float = 0.0
+    relief_sigma: float = 0.0
 
     @property
     def rate(self) -> float:
@@ -210,4 +213,4 @@ def rate_index(options: Sequence[Option], centres: tuple[int, ...] | None = None
     total = math.fsum(o.rate for o in own)
     if total <= 0.0:
         return 0.0, 0.0
-    return total, math.sqrt(math.fsum((o.rate / total * o.sigma_ln) ** 2 for o in own))
+    return total, math.sqrt(math.fsum((o.rate / total * math.hypot(o.sigma_ln, o.relief_sigma)) ** 2 for o in own))

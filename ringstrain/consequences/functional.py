@@ -121,7 +121,7 @@ def is_hydroxyl(structure: Structure, atom: int) -> bool:
 
 
 def alcohols(scene: Scene) -> tuple[tuple[int, int], ...]:
-    """(ring carbon, oxygen) of every alcohol on a tetrahedral ring carbon; hemiacetal carbons left out."""
+    """(ring carbon, oxygen) of every hydroxyl on a tetrahedral ring carbon, anomeric ones included."""
     structure = scene.structure
     return tuple(
         (atom, n)

@@ -10,6 +10,7 @@ from ringstrain.consequences.answer import CLASSES, check_class, find
 from ringstrain.consequences.finding import Finding, Verdict
 from ringstrain.consequences.reduction import REAGENTS as KETONE_REAGENTS
 from ringstrain.consequences.request import Request
+from ringstrain.consequences.rulebook import rule
 from ringstrain.consequences.scene import scenes
 from ringstrain.tables.records import Tables
 
@@ -119,6 +120,11 @@ def _notes(analysis: Analysis, findings: tuple[Finding, ...]) -> tuple[str, ...]
     drawn = any(finding.product_smiles and "@" in finding.product_smiles for finding in findings)
     if drawn and any(scene.settled.configurations != scene.structure.configurations for scene in scenes(analysis)):
         notes.append("A centre without configuration becomes one in the product: relative configuration is written.")
+    if findings and analysis.temperature_K < rule("exchange-limit").number:
+        notes.append(
+            "At this temperature a ring flips more slowly than it reacts: shares follow ground-state populations, and "
+            "rates beside an epimer do not hold."
+        )
     if analysis.medium == "protic" or analysis.conditions.medium == "protic":
         notes.append("Amines and acids may be ionised in this medium.")
     return tuple(notes)

@@ -10,7 +10,7 @@ from __future__ import annotations
 from ringstrain.analysis import State
 from ringstrain.consequences.epoxides import closed_epoxide
 from ringstrain.consequences.finding import Finding, Option
-from ringstrain.consequences.functional import alcohols, leaving_groups
+from ringstrain.consequences.functional import alcohols, leaving_groups, leaving_name
 from ringstrain.consequences.products import remove_branch, turn
 from ringstrain.consequences.request import Request
 from ringstrain.consequences.scene import Scene, has_boat
@@ -47,6 +47,42 @@ def options(scene: Scene, request: Request) -> list[Option]:
                 states = [s for s in scene.states if not has_boat(s)] or list(scene.states)
                 for state in states:
                     found.extend(_moves(scene, state, i, leaving, name, carbon, oxygen))
+        found.extend(_expansions(scene, carbon, oxygen))
+    return found
+
+
+def _expansions(scene: Scene, carbon: int, oxygen: int) -> list[Option]:
+    """Ring expansion from a CH2 with a leaving group (or NH2) on the carbinol carbon; either ring bond can be anti."""
+    structure, state = scene.structure, scene.states[0]
+    found: list[Option] = []
+    for x in scene.outer(carbon):
+        if structure.atoms[x].number != 6 or structure.atoms[x].hydrogens != 2:
+            continue
+        for leaving in (int(n) for n in structure.neighbours[x] if n != carbon):
+            record = structure.atoms[leaving]
+            amine = record.number == 7 and len(structure.neighbours[leaving]) == 1 and record.hydrogens in (2, 3)
+            if not amine and leaving_name(structure, x, leaving) is None:
+                continue
+            for y in scene.ring_neighbours(carbon):
+                finding = Finding(
+                    reaction="semipinacol",
+                    ring_system=scene.number,
+                    state=state.id,
+                    state_population=scene.shares[state.id],
+                    cost_kcal=scene.cost(state),
+                    cost_uncertainty_kcal=scene.cost_sigma(state),
+                    verdict="open",
+                    leaving_atoms=(leaving,),
+                    partner_atoms=(carbon, y),
+                    product_smiles=_migrated(scene, x, leaving, carbon, oxygen, y),
+                    pathway="ring expansion",
+                    reason=f"The CH2 {x + 1} turns so that ring bond {carbon + 1}-{y + 1} is anti to what leaves; "
+                    "the ring makes no demand of its own.",
+                    limits=("Which ring bond moves follows the better migrating carbon; no number is given.",),
+                    cautions=(CAUTION,),
+                    sources=("common-practice",),
+                )
+                found.append(Option(finding=finding, weight=1.0))
     return found
 
 

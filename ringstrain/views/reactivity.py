@@ -208,17 +208,19 @@ def _with_limits(f: Finding) -> str:
 
 def _relative(findings: tuple[Finding, ...], look: Look) -> Iterator[RenderableType]:
     """Rates beside the epimers, each once."""
-    seen: set[tuple[str, float]] = set()
+    seen: set[str] = set()
     for f in findings:
-        if f.relative is None or (f.relative_to, f.relative) in seen:
+        if not f.relative_to or f.relative_to in seen:
             continue
-        seen.add((f.relative_to, f.relative))
-        low = (
-            f" ({constant(f.relative_low)} to {constant(f.relative_high)})"
-            if f.relative_low and f.relative_high
-            else ""
-        )
-        yield look.text(f"Rate relative to the epimer {f.relative_to}: {constant(f.relative)}{low}, {f.confidence}.")
+        seen.add(f.relative_to)
+        if f.relative is None:
+            other = "does not react" if f.product_smiles else "reacts"
+            yield look.text(f"The epimer {f.relative_to} {other} in this class.")
+            continue
+        low, high = f.relative_low, f.relative_high
+        limits = f" ({constant(low)} to {constant(high)})" if low and high else ""
+        rate = f"{constant(f.relative)}{limits}, {f.confidence}"
+        yield look.text(f"Rate relative to the epimer {f.relative_to}: {rate}.")
 
 
 def _alternatives(findings: tuple[Finding, ...], look: Look) -> Iterator[RenderableType]:
