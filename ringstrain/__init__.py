@@ -18,9 +18,12 @@ __version__ = "0.1.0"
 
 if TYPE_CHECKING:
     from ringstrain.analysis import Analysis, analyze
+    from ringstrain.batch import Failure, analyze_many
     from ringstrain.errors import InputError, MissingValue, OutOfScope, RingstrainError, TableError
     from ringstrain.isomers import rank_isomers
+    from ringstrain.patterns import Pattern, enumerate_patterns
     from ringstrain.ranking import Isomer, Ranking
+    from ringstrain.sieve import Wish
     from ringstrain.structure import Structure
     from ringstrain.structure.files import read_file
     from ringstrain.structure.read import read
@@ -29,11 +32,16 @@ if TYPE_CHECKING:
 _HOMES = {
     "Analysis": "ringstrain.analysis",
     "analyze": "ringstrain.analysis",
+    "Failure": "ringstrain.batch",
+    "analyze_many": "ringstrain.batch",
     "InputError": "ringstrain.errors",
     "MissingValue": "ringstrain.errors",
     "OutOfScope": "ringstrain.errors",
     "RingstrainError": "ringstrain.errors",
     "TableError": "ringstrain.errors",
+    "Pattern": "ringstrain.patterns",
+    "enumerate_patterns": "ringstrain.patterns",
+    "Wish": "ringstrain.sieve",
     "Isomer": "ringstrain.ranking",
     "Ranking": "ringstrain.ranking",
     "rank_isomers": "ringstrain.isomers",
@@ -45,17 +53,22 @@ _HOMES = {
 }
 __all__ = [
     "Analysis",
+    "Failure",
     "InputError",
     "Isomer",
     "MissingValue",
     "OutOfScope",
+    "Pattern",
     "Ranking",
     "RingstrainError",
     "Structure",
     "TableError",
     "Tables",
+    "Wish",
     "__version__",
     "analyze",
+    "analyze_many",
+    "enumerate_patterns",
     "load_tables",
     "rank_isomers",
     "read",

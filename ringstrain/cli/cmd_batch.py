@@ -1,0 +1,291 @@
+"""`ringstrain batch`: one row for each record of a file, in order, whatever happens."""
+
+from __future__ import annotations
+
+import os
+import sys
+import time
+from collections.abc import Callable, Iterator
+from concurrent.futures import Executor
+from contextlib import closing
+from functools import partial
+from itertools import chain, islice
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any
+
+import typer
+
+from ringstrain.cli import common
+from ringstrain.errors import UsageError
+
+if TYPE_CHECKING:
+    from ringstrain.batch_read import RecordReader
+    from ringstrain.batch_rows import BatchRecord, Row, Settings
+
+HELP = """One row for each record of a file: status, axial groups, gap, K, population.
+
+\b
+  ringstrain batch library.smi -o answers.csv
+  ringstrain batch library.sdf.gz -o answers.jsonl --isomers --workers 4
+  ringstrain batch library.smi -o answers.csv --resume
+
+Input .smi .csv .tsv .sdf (also .gz); output .csv .tsv .jsonl .sdf (also .gz) .parquet. Rows come in input order.
+"""
+#: Fewer records than this are done in one process, since starting others takes longer.
+FEW = 2000
+_CHUNK = 100
+_INTERVAL_s = 0.5
+
+
+def register(app: typer.Typer) -> None:
+    """Add the command to the application."""
+    app.command("batch", help=HELP)(batch)
+
+
+def batch(
+    file: Annotated[str, typer.Argument(metavar="FILE", help="Structures: .smi .csv .tsv .sdf, also .gz.")],
+    output: Annotated[
+        str, typer.Option("-o", "--output", metavar="FILE", help="Where the rows go; the suffix decides the format.")
+    ],
+    workers: Annotated[
+        int | None,
+        typer.Option(
+            "--workers", metavar="N", help=f"Processes; one below {FEW} records, else all cores.", show_default=False
+        ),
+    ] = None,
+    resume: Annotated[
+        bool, typer.Option("--resume", help="Go on where an earlier run of the same command was cut off.")
+    ] = False,
+    isomers: Annotated[
+        bool, typer.Option("--isomers", help="Add the rank among the stereoisomers, and the best one.")
+    ] = False,
+    nmr: Annotated[bool, typer.Option("--nmr", help="Add the averaged couplings of the ring hydrogens.")] = False,
+    smiles_column: Annotated[
+        str | None,
+        typer.Option(
+            "--smiles-column", metavar="NAME", help="Column of the structures in a .csv or .tsv.", show_default=False
+        ),
+    ] = None,
+    id_column: Annotated[
+        str | None, typer.Option("--id-column", metavar="NAME", help="Column of their names.", show_default=False)
+    ] = None,
+    scheduler: Annotated[
+        str | None,
+        typer.Option(
+            "--scheduler",
+            metavar="ADDRESS",
+            help="Work on a Dask cluster, e.g. tcp://host:8786 (extra 'dask').",
+            show_default=False,
+        ),
+    ] = None,
+    temperature: common.TemperatureOption = "298.15",
+    medium: common.MediumOption = "nonpolar",
+    ring: common.RingOption = "cyclohexane",
+    strict: common.StrictOption = False,
+    table_file: common.TableFileOption = None,
+    quiet: common.QuietOption = False,
+    debug: common.DebugOption = False,
+) -> int:
+    """Run the command; the exit code."""
+    settings = _settings(
+        temperature=temperature,
+        medium=medium,
+        ring=ring,
+        strict=strict,
+        table_file=table_file,
+        isomers=isomers,
+        nmr=nmr,
+        output=output,
+    )
+    if workers is not None and workers < 1:
+        raise UsageError(f"{workers} workers cannot work.", "Give --workers a number from 1.")
+    if workers is not None and scheduler is not None:
+        raise UsageError("--workers and --scheduler contradict each other.", "The cluster has its own workers.")
+    if Path(file).exists() and Path(output).exists() and os.path.samefile(file, output):
+        raise UsageError("Input and output are the same file.", "Write to another one.")
+    from ringstrain.batch_read import RecordReader
+    from ringstrain.batch_write import open_writer
+
+    with RecordReader(file, smiles_column=smiles_column, id_column=id_column) as reader:
+        records = iter(reader)
+        first = list(islice(records, FEW))
+        writer, done = open_writer(output, settings.columns, resume=resume)
+        with closing(writer):
+            count = workers or (1 if len(first) < FEW else os.cpu_count() or 1)
+            rest = _skip(chain(first, records), done, output)
+            rows = _rows(rest, settings, count, scheduler)
+            return _write_all(rows, writer.write, reader, done=done, quiet=quiet, strict=strict)
+
+
+def _settings(
+    *,
+    temperature: str,
+    medium: str,
+    ring: str,
+    strict: bool,
+    table_file: str | None,
+    isomers: bool,
+    nmr: bool,
+    output: str,
+) -> Settings:
+    """What is asked about every record, checked before the first one is read."""
+    from ringstrain.batch_rows import Settings
+    from ringstrain.structure.shorthand import PARENT_RINGS
+    from ringstrain.tables.conditions import make_conditions
+
+    temperatures, media = common.parse_temperatures(temperature), common.media_of(medium)
+    if len(temperatures) > 1 or len(media) > 1:
+        raise UsageError("A batch has one temperature and one medium.", "Give one value to -T and --medium.")
+    if ring not in PARENT_RINGS:
+        raise UsageError(f"No ring is called {ring!r}.", f"Choose one of {', '.join(PARENT_RINGS)}.")
+    make_conditions(common.tables_for(table_file), temperature_K=temperatures[0], medium=media[0])
+    return Settings(
+        temperature_K=temperatures[0],
+        medium=media[0],
+        ring=ring,
+        strict=strict,
+        table_file=None if table_file is None else str(Path(table_file).resolve()),
+        isomers=isomers,
+        nmr=nmr,
+        blocks=output.lower().removesuffix(".gz").endswith(".sdf"),
+    )
+
+
+def _skip(records: Iterator[BatchRecord], done: int, output: str) -> Iterator[BatchRecord]:
+    """The records that have no row yet; the last one that has is checked against it."""
+    if not done:
+        return records
+    from ringstrain.batch_write import check_last_row
+    from ringstrain.errors import InputError
+
+    last = None
+    count = 0
+    for last in islice(records, done):
+        count += 1
+    if last is None or count < done:
+        raise InputError(
+            f"{output!r} holds more rows than the input has records.", "Resume with the input of the first run."
+        )
+    check_last_row(Path(output), last)
+    return records
+
+
+def _rows(records: Iterator[BatchRecord], settings: Settings, workers: int, scheduler: str | None) -> Iterator[Row]:
+    """Rows in order."""
+    from ringstrain.batch_rows import answer_chunk, lost_row
+    from ringstrain.crew import Crew, Inline, open_pool, run_in_order
+
+    window, chunk = 1, 1
+    if scheduler is not None:
+        executor, cores = _open_cluster(scheduler)
+        crew = Crew(executor)
+        window, chunk = 4 * cores, _CHUNK
+    elif workers == 1:
+        crew = Crew(Inline())
+    else:
+        reopen: Callable[[], Executor] = partial(open_pool, workers)
+        crew = Crew(reopen(), reopen)
+        window, chunk = 3 * workers, _CHUNK
+    return run_in_order(
+        records,
+        partial(answer_chunk, settings=settings),
+        lambda record, error: lost_row(record, settings),
+        crew=crew,
+        chunk=chunk,
+        window=window,
+    )
+
+
+def _open_cluster(address: str) -> tuple[Executor, int]:
+    """The executor of a Dask cluster and how many threads it has."""
+    try:
+        from distributed import Client
+    except ImportError:
+        raise UsageError(
+            "--scheduler needs the dask package.", "Install it with `pip install 'ringstrain[dask]'`."
+        ) from None
+    try:
+        client: Any = Client(address, timeout="10s")
+    except (OSError, ValueError) as error:
+        raise UsageError(
+            f"No Dask scheduler answers at {address} ({type(error).__name__}).", "Check the address."
+        ) from None
+    return client.get_executor(pure=False), max(1, sum(client.nthreads().values()))
+
+
+def _write_all(
+    rows: Iterator[Row], write: Callable[[Row], None], reader: RecordReader, *, done: int, quiet: bool, strict: bool
+) -> int:
+    """Write the rows, tell how far it is, sum up; the exit code."""
+    from ringstrain.batch_rows import EXIT_CODES, STATUSES
+
+    tally = dict.fromkeys(STATUSES, 0)
+    progress = _Progress(reader, done=done, shown=not quiet and sys.stderr.isatty())
+    try:
+        for row in rows:
+            write(row)
+            tally[row.status] += 1
+            progress.step()
+    finally:
+        progress.clear()
+        if not quiet:
+            sys.stderr.write(_summary(tally, done, progress.seconds) + "\n")
+    return max((EXIT_CODES[status] for status, count in tally.items() if count), default=0) if strict else 0
+
+
+def _summary(tally: dict[str, int], done: int, seconds: float) -> str:
+    """How many records ended how, and how fast."""
+    total = sum(tally.values())
+    parts = ", ".join(f"{count} {status}" for status, count in tally.items() if count) or "none"
+    before = f" after {done} rows of an earlier run" if done else ""
+    return f"{total} records{before}: {parts}; {seconds:.1f} s, {total / seconds if seconds else 0:.0f} a second."
+
+
+class _Progress:
+    """One line on standard error that is written over, from the second second on."""
+
+    def __init__(self, reader: RecordReader, *, done: int, shown: bool) -> None:
+        self._reader = reader
+        self._shown = shown
+        self._done = done
+        self._count = 0
+        self._start = self._next = time.monotonic()
+        self._from = 0.0
+        self._next += 2 * _INTERVAL_s
+        self._width = 0
+
+    @property
+    def seconds(self) -> float:
+        """Time since the start [s]."""
+        return time.monotonic() - self._start
+
+    def step(self) -> None:
+        """One row more."""
+        self._count += 1
+        if not self._shown or (now := time.monotonic()) < self._next:
+            return
+        self._next = now + _INTERVAL_s
+        rate = self._count / (now - self._start)
+        fraction = self._reader.fraction
+        left = (
+            f", {_duration((now - self._start) * (1 - fraction) / fraction)} left"
+            if 0 < fraction < 1 and not self._done
+            else ""
+        )
+        text = f"{self._done + self._count} records, {rate:.0f} a second{left}"
+        sys.stderr.write("\r" + text.ljust(self._width))
+        sys.stderr.flush()
+        self._width = len(text)
+
+    def clear(self) -> None:
+        """Take the line away."""
+        if self._width:
+            sys.stderr.write("\r" + " " * self._width + "\r")
+            sys.stderr.flush()
+
+
+def _duration(seconds: float) -> str:
+    """Hours, minutes or seconds."""
+    if seconds >= 5400:
+        return f"{seconds / 3600:.1f} h"
+    return f"{seconds / 60:.0f} min" if seconds >= 90 else f"{seconds:.0f} s"

@@ -1,0 +1,181 @@
+"""Chunks of work done in order by an executor whose workers may die."""
+
+from __future__ import annotations
+
+import multiprocessing
+import signal
+from collections import deque
+from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import BrokenExecutor, Executor, Future, ProcessPoolExecutor
+from itertools import islice
+from typing import TypeVar
+
+from ringstrain.errors import RingstrainError
+
+Item = TypeVar("Item")
+Outcome = TypeVar("Outcome")
+
+
+def in_chunks(items: Iterable[Item], size: int) -> Iterator[tuple[Item, ...]]:
+    """The items a few at a time."""
+    stream = iter(items)
+    while chunk := tuple(islice(stream, size)):
+        yield chunk
+
+
+def open_pool(workers: int) -> ProcessPoolExecutor:
+    """A pool of fresh processes that leave Ctrl-C to their parent."""
+    return ProcessPoolExecutor(
+        workers,
+        mp_context=multiprocessing.get_context("spawn"),
+        initializer=signal.signal,
+        initargs=(signal.SIGINT, signal.SIG_IGN),
+    )
+
+
+class Inline(Executor):
+    """An executor that works at once in this process."""
+
+    def submit(self, fn, /, *args, **kwargs):  # type: ignore[no-untyped-def]
+        """A future that is already done."""
+        future: Future[object] = Future()
+        try:
+            future.set_result(fn(*args, **kwargs))
+        except Exception as error:
+            future.set_exception(error)
+        return future
+
+
+class Crew:
+    """An executor that is opened anew when it breaks.
+
+    Parameters
+    ----------
+    executor
+        What works.
+    reopen
+        Makes another one; None when the executor is not ours to replace.
+    """
+
+    def __init__(self, executor: Executor, reopen: Callable[[], Executor] | None = None) -> None:
+        self._executor = executor
+        self._reopen = reopen
+        self.generation = 0
+
+    def submit(
+        self, work: Callable[[tuple[Item, ...]], list[Outcome]], chunk: tuple[Item, ...]
+    ) -> Future[list[Outcome]]:
+        """A future for a chunk; one that has failed when the executor takes no more work."""
+        try:
+            return self._executor.submit(work, chunk)
+        except (BrokenExecutor, RuntimeError) as error:
+            self.renew(self.generation)
+            if self._reopen is not None:
+                return self._executor.submit(work, chunk)
+            failed: Future[list[Outcome]] = Future()
+            failed.set_exception(error)
+            return failed
+
+    def renew(self, generation: int) -> None:
+        """Replace the executor unless that has happened since ``generation``."""
+        if self._reopen is None or generation != self.generation:
+            return
+        self._executor.shutdown(wait=True, cancel_futures=True)
+        self._executor = self._reopen()
+        self.generation += 1
+
+    def close(self) -> None:
+        """Let no more work begin; an executor that was handed to us stays open."""
+        if self._reopen is not None:
+            self._executor.shutdown(wait=False, cancel_futures=True)
+
+
+def run_in_order(
+    items: Iterable[Item],
+    work: Callable[[tuple[Item, ...]], list[Outcome]],
+    lost: Callable[[Item, BaseException], Outcome],
+    *,
+    crew: Crew,
+    chunk: int,
+    window: int,
+) -> Iterator[Outcome]:
+    """One outcome for each item, in order.
+
+    Parameters
+    ----------
+    items
+        What to work on; read only as far as ``window`` chunks ahead.
+    work
+        Turns a chunk into a list of outcomes.
+    lost
+        Outcome of an item whose worker died.
+    crew
+        Who works.
+    chunk
+        Items handed over at once [-].
+    window
+        Chunks under way at once [-].
+
+    Yields
+    ------
+    Outcome
+        One for each item.
+
+    Raises
+    ------
+    RingstrainError
+        What ``work`` raises on purpose, because every item would fail alike.
+
+    Notes
+    -----
+    When a worker dies the first unfinished chunk is done again one item at a time, so that only the culprit is lost;
+    the other unfinished chunks are handed out again whole.
+    """
+    chunks = in_chunks(items, chunk)
+    waiting: deque[tuple[tuple[Item, ...], Future[list[Outcome]], int]] = deque()
+    try:
+        while True:
+            for part in islice(chunks, window - len(waiting)):
+                waiting.append((part, crew.submit(work, part), crew.generation))
+            if not waiting:
+                return
+            part, future, generation = waiting.popleft()
+            try:
+                outcomes = future.result()
+            except RingstrainError:  # nothing a single item could be blamed for: the tables, say
+                raise
+            except Exception:  # a worker died, or could not take or hand back the chunk
+                crew.renew(generation)
+                yield from (_alone(item, work, lost, crew) for item in part)
+                waiting = deque(
+                    entry if _is_fine(entry[1]) else (entry[0], crew.submit(work, entry[0]), crew.generation)
+                    for entry in waiting
+                )
+            else:
+                yield from outcomes
+    finally:
+        for _, future, _ in waiting:
+            future.cancel()
+        crew.close()
+
+
+def _alone(
+    item: Item,
+    work: Callable[[tuple[Item, ...]], list[Outcome]],
+    lost: Callable[[Item, BaseException], Outcome],
+    crew: Crew,
+) -> Outcome:
+    """The outcome of one item, done by itself."""
+    generation = crew.generation
+    try:
+        return crew.submit(work, (item,)).result()[0]
+    except RingstrainError:
+        raise
+    except Exception as error:
+        crew.renew(generation)
+        return lost(item, error)
+
+
+def _is_fine(future: Future[list[Outcome]]) -> bool:
+    """True for a future that is done or may still be."""
+    return not future.done() or (not future.cancelled() and future.exception() is None)
