@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
+from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -115,6 +116,12 @@ class Pattern:
             for g in self.groups
         ]
         return {"schema": SCHEMA, "kind": "pattern", "version": __version__, **own, "groups": groups}
+
+    def _repr_html_(self) -> str:
+        return str(import_module("ringstrain.views.notebook").pattern_html(self))
+
+    def _repr_svg_(self) -> str:
+        return str(import_module("ringstrain.views.notebook").pattern_svg(self))
 
 
 @dataclass(slots=True)

@@ -163,9 +163,7 @@ class Ranking:
         }
 
     def _repr_html_(self) -> str:
-        text: str = import_module("ringstrain.views.notebook").ranking_html(self)
-        return text
+        return str(import_module("ringstrain.views.notebook").ranking_html(self))
 
     def _repr_svg_(self) -> str:
-        text: str = import_module("ringstrain.views.notebook").ranking_svg(self)
-        return text
+        return str(import_module("ringstrain.views.notebook").ranking_svg(self))

@@ -236,9 +236,7 @@ class Analysis:
 
     def _repr_html_(self) -> str:
         """The report, for notebooks; views are looked up by name because they build on this record."""
-        text: str = import_module("ringstrain.views.notebook").analysis_html(self)
-        return text
+        return str(import_module("ringstrain.views.notebook").analysis_html(self))
 
     def _repr_svg_(self) -> str:
-        text: str = import_module("ringstrain.views.notebook").analysis_svg(self)
-        return text
+        return str(import_module("ringstrain.views.notebook").analysis_svg(self))

@@ -6,7 +6,9 @@ from html.parser import HTMLParser
 
 import pytest
 import ringstrain as rs
+from ringstrain.consequences.overview import react
 from ringstrain.isomers import rank_isomers
+from ringstrain.patterns import enumerate_patterns
 from ringstrain.structure.records import Structure
 from ringstrain.tables import load_tables
 from ringstrain.views.look import Look
@@ -148,8 +150,22 @@ def test_a_locked_system_says_so() -> None:
 def test_notebooks_get_a_page_part_and_a_picture() -> None:
     analysis = rs.analyze(MENTHOL)
     ranking = rank_isomers("CC1CCC(O)CC1")
-    for answer in (analysis, ranking):
+    pattern = next(iter(enumerate_patterns(["Me", "OH"])))
+    for answer in (analysis, ranking, pattern):
         part = Reader(answer._repr_html_())
         assert "svg" in part.tags
         assert not {"html", "body", "script"} & set(part.tags)
         assert answer._repr_svg_().startswith("<svg ")
+
+
+def test_reactivity_brings_its_products_sources_and_cautions() -> None:
+    analysis = rs.analyze("C[C@H]1CC[C@@H](C(C)(C)C)C[C@@H]1Br")
+    findings = react(analysis).findings
+    assert findings
+    sources = load_tables().sources
+    text = " ".join(Reader(report(analysis, sources, Look(), findings=findings)).text)
+    for finding in findings:
+        assert finding.reason in text
+        assert all(caution in text for caution in finding.cautions)
+        assert finding.product_smiles is None or finding.product_smiles in text
+        assert all(sources[key].citation in text for key in finding.sources)

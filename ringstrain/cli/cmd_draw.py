@@ -340,6 +340,6 @@ def _by_length(id: str) -> tuple[int, str]:
 
 def _findings(analysis: Analysis, tables: Tables) -> tuple[Finding, ...]:
     """What the structure does in every class of reaction."""
-    from ringstrain.consequences.answer import CLASSES, find
+    from ringstrain.consequences.overview import react
 
-    return tuple(finding for reaction in CLASSES for finding in find(analysis, reaction, tables=tables))
+    return react(analysis, tables=tables).findings

@@ -8,10 +8,11 @@ from ringstrain.analysis import Analysis, analyze
 from ringstrain.tables import load_tables
 from ringstrain.units import Z95
 from ringstrain.views.drawing.ladders import Rung, draw_ladder
-from ringstrain.views.drawing.panels import draw_system, stacked
+from ringstrain.views.drawing.panels import draw_system, side_by_side, stacked
 from ringstrain.views.drawing.scene import Scene
+from ringstrain.views.drawing.states import draw_state
 from ringstrain.views.drawing.svg import to_svg
-from ringstrain.views.look import Look, kelvin
+from ringstrain.views.look import Look, constant, kelvin
 from ringstrain.views.markup import bullets, figure, fragment, heading, paragraph
 from ringstrain.views.report import report_body
 from ringstrain.views.rich_tables import shown_states
@@ -81,16 +82,27 @@ def ranking_html(ranking: Ranking) -> str:
     return fragment("\n".join(parts))
 
 
-def pattern_html(pattern: Pattern) -> str:
-    """A pattern with the drawing of its chairs, as a part of a page."""
-    analysis = analyze(pattern.smiles)
-    scene = analysis_scene(analysis, Look())
-    return fragment(
-        heading(3, f"{pattern.rank}. {pattern.pattern}")
-        + figure(to_svg(scene, standalone=False), (pattern.smiles,), wide=True)
-    )
+def pattern_scene(pattern: Pattern) -> Scene:
+    """The chairs of a pattern, without figures: those belong to the conditions it was ranked at."""
+    result = analyze(pattern.smiles).ring_systems[0]
+    chairs = [state for state in result.states if set(state.shapes) == {"chair"}] or list(result.states[:1])
+    return side_by_side([draw_state(result, state) for state in chairs[:2]], f"Chairs of {pattern.pattern}")
 
 
 def pattern_svg(pattern: Pattern) -> str:
     """The chairs of a pattern as SVG."""
-    return analysis_svg(analyze(pattern.smiles))
+    return to_svg(pattern_scene(pattern))
+
+
+def pattern_html(pattern: Pattern) -> str:
+    """A pattern with its chairs and figures, as a part of a page."""
+    lines = [f"{pattern.rank}. {pattern.pattern}", pattern.smiles]
+    if pattern.K is not None and pattern.dG_kcal is not None:
+        spread = Z95 * (pattern.uncertainty_kcal or 0.0)
+        gap = f"{Look().energy(pattern.dG_kcal)} \N{PLUS-MINUS SIGN} {Look().energy(spread)} kcal/mol"
+        lines.append(
+            f"K {pattern.bound} {constant(pattern.K)}; \N{GREEK CAPITAL LETTER DELTA}G {gap}".replace("  ", " ")
+        )
+    elif pattern.bound:
+        lines.append(f"K {pattern.bound}")
+    return fragment(figure(to_svg(pattern_scene(pattern), standalone=False), lines))

@@ -283,9 +283,11 @@ def _reactivity(findings: Sequence[Finding], marks: References, look: Look) -> l
                 Cell(cost, True),
                 Cell(share, True),
                 Cell(f.product_smiles or "none"),
-                Cell(f.reason, remarks=(*f.limits, *f.cautions)),
+                Cell(f.reason),
                 Cell(" ".join([f.confidence, *(marks.mark(key) for key in f.sources)])),
             )
         )
     head = ("reaction", "from state", "verdict", f"cost, {look.unit}", "share", "product", "why", "confidence")
-    return [*parts, table(head, rows)]
+    parts.append(table(head, rows))
+    remarks = tuple(dict.fromkeys(remark for f in findings for remark in (*f.cautions, *f.limits)))
+    return [*parts, heading(3, "Cautions and limits"), bullets(remarks)] if remarks else parts

@@ -96,17 +96,28 @@ def written_out(structure: Structure, root: int, first: int) -> tuple[str, ...]:
     head = _atom_pieces(structure, first)
     if len(branch) == 1:
         return head
+    if _is_phenyl(structure, branch):
+        return ("Ph",)
     rest = [n for n in branch if n != first]
-    if not ring and len(rest) <= 3 and all(structure.atoms[n].number != 6 or len(rest) == 1 for n in rest):
-        tail: list[str] = []
-        names = ["".join(_atom_pieces(structure, n)) for n in rest]
-        if len(set(names)) == 1 and len(_atom_pieces(structure, rest[0])) == 1 and len(rest) > 1:
-            tail = [f"{names[0]}{len(rest)}"]
-        elif _is_chain(structure, first, rest):
-            tail = [piece for n in rest for piece in _atom_pieces(structure, n)]
-        if tail:
-            return (*head, *tail)
+    outer = [int(n) for n in structure.neighbours[first] if n != root]
+    names = ["".join(_atom_pieces(structure, n)) for n in rest]
+    if not ring and len(rest) == len(outer) > 1 and len(set(names)) == 1 and len(_atom_pieces(structure, rest[0])) == 1:
+        return (*head, f"{names[0]}{len(rest)}")
+    if not ring and len(rest) <= 3 and _is_chain(structure, first, rest):
+        return (*head, *(piece for n in rest for piece in _atom_pieces(structure, n)))
+    oxo = [n for n in outer if structure.atoms[n].number == 8 and structure.bond(first, n).order == 2]
+    heads = [n for n in outer if n not in oxo]
+    if structure.atoms[first].number in (6, 7, 8, 16) and len(heads) == 1 and len(oxo) <= 2:
+        tail = written_out(structure, first, heads[0])
+        if len(tail) < 4 and sum(map(len, tail)) <= 4:
+            oxygens = ("O",) if len(oxo) == 1 else (f"O{len(oxo)}",) if oxo else ()
+            return (*head, *oxygens, *tail)
     return _sum_formula(structure, branch)
+
+
+def _is_phenyl(structure: Structure, branch: list[int]) -> bool:
+    """True for six aromatic carbons and nothing else."""
+    return len(branch) == 6 and all(structure.atoms[n].aromatic and structure.atoms[n].number == 6 for n in branch)
 
 
 def _is_chain(structure: Structure, first: int, rest: list[int]) -> bool:
