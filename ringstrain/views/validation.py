@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 from ringstrain.analysis import SCHEMA
 from ringstrain.units import KJ_PER_KCAL, Z95
+from ringstrain.validation.explanations import Explanation
 from ringstrain.validation.score import Score, medium_of
 from ringstrain.validation.summary import ALL, GroupAccuracy, Validation
 from ringstrain.views.as_json import to_line
@@ -23,7 +24,7 @@ _WIDE = 76
 _ROW_COLUMNS = (
     "id", "group", "set", "status", "name_a", "name_b", "medium", "temperature_K", "quantity", "bound",
     "measured_{u}", "measured_uncertainty_{u}", "predicted_{u}", "predicted_uncertainty_{u}", "difference_{u}",
-    "covered", "right_winner", "regime", "ledger_difference", "reason",
+    "covered", "right_winner", "regime", "ledger_difference", "reason", "why_missed",
 )  # fmt: skip
 _GROUP_COLUMNS = (
     "set", "group", "rows", "mean_absolute_{u}", "rms_{u}", "worst", "worst_{u}", "winners_right", "winners", "covered",
@@ -133,7 +134,9 @@ def _sentences(validation: Validation, look: Look) -> Iterator[str]:
         )
 
 
-def rows_view(validation: Validation, tables: Tables, look: Look) -> RenderableType:
+def rows_view(
+    validation: Validation, tables: Tables, look: Look, explanations: Mapping[str, Explanation]
+) -> RenderableType:
     """Every equilibrium with measured value, prediction, difference and the lines behind it.
 
     Parameters
@@ -144,6 +147,8 @@ def rows_view(validation: Validation, tables: Tables, look: Look) -> RenderableT
         Names of the solvents.
     look
         How values are written.
+    explanations
+        Why rows are missed, by row.
 
     Returns
     -------
@@ -156,7 +161,7 @@ def rows_view(validation: Validation, tables: Tables, look: Look) -> RenderableT
     parts: list[RenderableType] = []
     for score in validation.scores:
         parts.append(look.text(_headline(score, look), "bold"))
-        parts.extend(Padding(look.text(line), (0, 0, 0, 4)) for line in _details(score, tables))
+        parts.extend(Padding(look.text(line), (0, 0, 0, 4)) for line in _details(score, tables, explanations))
     return Group(*parts)
 
 
@@ -183,7 +188,7 @@ def _headline(score: Score, look: Look) -> str:
     return "  ".join(parts)
 
 
-def _details(score: Score, tables: Tables) -> Iterator[str]:
+def _details(score: Score, tables: Tables, explanations: Mapping[str, Explanation]) -> Iterator[str]:
     """What the row is about, and the lines that differ or why there is no score."""
     row = score.row
     what = row.name_a if row.name_a == row.name_b or not row.name_b else f"{row.name_a} / {row.name_b}"
@@ -194,6 +199,8 @@ def _details(score: Score, tables: Tables) -> Iterator[str]:
         yield score.reason
     if score.prediction is not None:
         yield "; ".join(line.text for line in score.prediction.lines) or "no line differs"
+    if row.id in explanations:
+        yield explanations[row.id].text
 
 
 def accuracy_plain(validation: Validation, units: Units = "kcal") -> str:
@@ -210,7 +217,9 @@ def accuracy_plain(validation: Validation, units: Units = "kcal") -> str:
     return "\n".join(lines)
 
 
-def rows_plain(validation: Validation, tables: Tables, units: Units = "kcal") -> str:
+def rows_plain(
+    validation: Validation, tables: Tables, explanations: Mapping[str, Explanation], units: Units = "kcal"
+) -> str:
     """Every equilibrium as one tab-separated line, with a header."""
     lines = ["\t".join(name.format(u=units) for name in _ROW_COLUMNS)]
     for score in validation.scores:
@@ -222,6 +231,7 @@ def rows_plain(validation: Validation, tables: Tables, units: Units = "kcal") ->
             _cell(p.sigma_kcal if p else None, units), _cell(score.difference_kcal, units), _yes(score.is_covered),
             _yes(score.is_right_winner), p.regime if p else "",
             "; ".join(line.text for line in p.lines) if p else "", score.reason,
+            explanations[row.id].text if row.id in explanations else "",
         ]  # fmt: skip
         lines.append("\t".join(cells))
     return "\n".join(lines)
@@ -235,7 +245,9 @@ def _yes(answer: bool | None) -> str:
     return "" if answer is None else "yes" if answer else "no"
 
 
-def validation_json(validation: Validation, tables: Tables, *, version: str, rows: bool) -> str:
+def validation_json(
+    validation: Validation, tables: Tables, explanations: Mapping[str, Explanation], *, version: str, rows: bool
+) -> str:
     """The validate document as one compact line of ASCII; energies in kcal/mol.
 
     Parameters
@@ -244,6 +256,8 @@ def validation_json(validation: Validation, tables: Tables, *, version: str, row
         Scores and summary.
     tables
         Their revision and solvents.
+    explanations
+        Why rows are missed, by row.
     version
         Version of ringstrain.
     rows
@@ -265,12 +279,13 @@ def validation_json(validation: Validation, tables: Tables, *, version: str, row
         "left_out": dict(validation.left_out),
     }
     if rows:
-        document["rows"] = [_row_document(score, tables) for score in validation.scores]
+        document["rows"] = [_row_document(score, tables, explanations) for score in validation.scores]
     return to_line(document)
 
 
-def _row_document(score: Score, tables: Tables) -> dict[str, Any]:
+def _row_document(score: Score, tables: Tables, explanations: Mapping[str, Explanation]) -> dict[str, Any]:
     row, p = score.row, score.prediction
+    why = explanations.get(row.id)
     return {
         "id": row.id,
         "group": row.group,
@@ -278,6 +293,7 @@ def _row_document(score: Score, tables: Tables) -> dict[str, Any]:
         "set": _set_of(score),
         "status": score.status,
         "reason": score.reason,
+        "why_missed": {"cause": why.cause, "reason": why.reason} if why else None,
         "smiles_a": row.smiles_a,
         "smiles_b": row.smiles_b,
         "orientation": row.orientation,
