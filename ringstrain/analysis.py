@@ -5,11 +5,12 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from ringstrain.billing import GroupMap
+from ringstrain.contacts import ContactKind
 from ringstrain.equilibrium import Equilibrium, Population, compare, mixture_energy, populations
 from ringstrain.errors import MissingValue
 from ringstrain.ledger import regime_of
 from ringstrain.provenance import combined_sigma
-from ringstrain.pyranose import chair_form
+from ringstrain.pyranose import chair_form, pyranose_order
 from ringstrain.results import SCHEMA, Analysis, Detail, State, SystemResult
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
@@ -25,6 +26,19 @@ from ringstrain.tables.prices import PriceBook, price_book
 from ringstrain.units import ROOM_TEMPERATURE_K
 
 __all__ = ["SCHEMA", "Analysis", "Detail", "State", "SystemResult", "analyze", "group_map"]
+
+
+#: Names of the contact counts in the answer, and the contacts they count.
+_COUNTS: dict[str, ContactKind] = {
+    "gauche": "gauche",
+    "syn_axial_XH": "syn-axial X//H",
+    "syn_axial_XY": "syn-axial X//Y",
+    "syn_axial_X_lp": "syn-axial X//lone pair",
+    "peri": "peri",
+    "geminal": "geminal",
+    "eclipsed": "eclipsed",
+    "transannular": "transannular",
+}
 
 
 def analyze(
@@ -111,13 +125,14 @@ def _analyze_system(structure: Structure, system: RingSystem, book: PriceBook) -
     priced, copies, sets = _sorted_forms(priced, groups, book)
     shares = _shares(priced, sets, book)
     ids = [_letter(i) for i in range(len(priced))]
+    order = pyranose_order(resolved.geometry)
     states = tuple(
         _make_state(
             ids[i],
             detail,
             None if copies[i] is None else ids[copies[i] or 0],
             shares[i],
-            chair_form(detail.shapes),
+            chair_form(detail.shapes, order) if order else "",
         )
         for i, detail in enumerate(priced)
     )
@@ -261,33 +276,31 @@ def _differs(first: Detail, second: Detail) -> bool:
 
 
 def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Population | None, form: str) -> State:
-    placed = [p for p in detail.facts.placed if p.occupant == "atom"]
-    axial = sorted({p.site.neighbour for p in placed if p.position == "axial"})
-    equatorial = sorted({p.site.neighbour for p in placed if p.position == "equatorial"})
+    axial: set[int] = set()
+    equatorial: set[int] = set()
+    sites: list[tuple[int, int, int, str]] = []
+    for p in detail.facts.placed:
+        if p.occupant == "atom":
+            site, position = p.site, p.position
+            sites.append((site.neighbour, site.ring_atom, site.ring, position))
+            if position == "axial":
+                axial.add(site.neighbour)
+            elif position == "equatorial":
+                equatorial.add(site.neighbour)
     ledger = detail.ledger
-    counts = {
-        "gauche": "gauche",
-        "syn_axial_XH": "syn-axial X//H",
-        "syn_axial_XY": "syn-axial X//Y",
-        "syn_axial_X_lp": "syn-axial X//lone pair",
-        "peri": "peri",
-        "geminal": "geminal",
-        "eclipsed": "eclipsed",
-        "transannular": "transannular",
-    }
-    tally = dict.fromkeys(counts.values(), 0)
+    tally = dict.fromkeys(_COUNTS.values(), 0)
     for contact in detail.facts.contacts:
         tally[contact.kind] += 1
     nitrogen = _nitrogen(detail)
     return State(
         id=id,
         shapes=tuple(ring.shape for ring in detail.shapes.rings),
-        axial=tuple(axial),
-        equatorial=tuple(equatorial),
+        axial=tuple(sorted(axial)),
+        equatorial=tuple(sorted(equatorial)),
         axial_H=tuple(atom for atom, position, bare in nitrogen if position == "axial" and bare),
         nitrogen=tuple((atom, position) for atom, position, _ in nitrogen),
         equivalent_to=equivalent_to,
-        counts=tuple((name, tally[kind]) for name, kind in counts.items()),
+        counts=tuple((name, tally[kind]) for name, kind in _COUNTS.items()),
         energy_kcal=ledger.total_kcal,
         uncertainty_kcal=combined_sigma(ledger.terms),
         lower_bound=bool(ledger.unknown),
@@ -296,7 +309,7 @@ def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Popul
         population_low=share.low if share else None,
         population_high=share.high if share else None,
         lines=ledger.lines,
-        sites=tuple((p.site.neighbour, p.site.ring_atom, p.site.ring, p.position) for p in placed),
+        sites=tuple(sites),
         form=form,
         detail=detail,
     )

@@ -225,8 +225,10 @@ def stereogenic(centres: Centres, free: Iterable[int]) -> tuple[int, ...]:
     found = []
     strings = all_signs(centres, wanted)
     for i, atom in enumerate(centres.atoms):
+        if atom not in wanted:
+            continue
         for signs in strings:
-            turned = signs[:i] + (-signs[i],) + signs[i + 1 :]
+            turned = (*signs[:i], -signs[i], *signs[i + 1 :])
             if not any(m.proper and m.apply(signs) == turned for m in centres.maps):
                 found.append(atom)
                 break

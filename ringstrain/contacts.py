@@ -140,35 +140,33 @@ def survey(state: Shapes) -> Survey:
 def _placed(state: Shapes) -> tuple[Placed, ...]:
     """Where every site points."""
     found = []
-    geometry = state.geometry
-    cards, ready = _cards(geometry)
-    for number, ring in enumerate(cards):
+    for number, cards in enumerate(_cards(state.geometry)):
         table = _positions(state.rings[number].torsions)
-        for site, occupant in ring:
-            position: Position = "equatorial" if not site.face else table[site.place][0 if site.face > 0 else 1]
-            card = ready.get((site, position))
+        for site, occupant, made in cards:
+            face = site.face
+            position: Position = "equatorial" if not face else table[site.place][0 if face > 0 else 1]
+            card = made.get(position)
             if card is None:
-                card = ready[site, position] = Placed(site, position, occupant)
+                card = made[position] = Placed(site, position, occupant)
             found.append(card)
     return tuple(found)
 
 
-_Cards = tuple[list[list[tuple[Site, Occupant]]], dict[tuple[Site, Position], Placed]]
+_Card = tuple[Site, Occupant, dict[Position, Placed]]
 
 
 @lru_cache(maxsize=4)
-def _cards(geometry: Geometry) -> _Cards:
-    """For each ring its sites and what stands there, and the records made so far; states share them."""
-    rings = [
+def _cards(geometry: Geometry) -> list[list[_Card]]:
+    """For each ring its sites, what stands there, and the records made so far; states share them."""
+    return [
         [
-            (site, occupant_of(geometry.structure, site))
+            (site, occupant_of(geometry.structure, site), {})
             for sites in ring
             for site in sites
             if not _is_set_aside(geometry, site)
         ]
         for ring in geometry.sites
     ]
-    return rings, {}
 
 
 def _is_set_aside(geometry: Geometry, site: Site) -> bool:

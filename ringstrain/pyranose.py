@@ -251,8 +251,8 @@ def _hetero_on(geometry: Geometry, atom: int) -> set[int]:
     return numbers - {1, 6}
 
 
-def chair_form(state: Shapes) -> str:
-    """``4C1`` or ``1C4`` of a pyranose chair, empty for other rings and shapes.
+def chair_form(state: Shapes, order: tuple[int, ...]) -> str:
+    """``4C1`` or ``1C4`` of a pyranose chair with its atoms in sugar order, empty for other shapes.
 
     Notes
     -----
@@ -260,8 +260,7 @@ def chair_form(state: Shapes) -> str:
     numbered clockwise; the torsion C1-C2-C3-C4 is then negative.
     """
     ring = state.rings[0]
-    order = pyranose_order(state.geometry)
-    if ring.shape != "chair" or order is None:
+    if ring.shape != "chair":
         return ""
     atoms = state.geometry.system.rings[0].atoms
     place = atoms.index(order[1])

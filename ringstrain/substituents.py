@@ -125,6 +125,8 @@ def classify(structure: Structure, first: int, root: int) -> str:
     number = atom.number
     if number == 1:
         return "hydrogen"
+    if structure.bond(first, root).order == 2 and not structure.bond(first, root).aromatic:
+        return "ylidene"
     if number == 6:
         return _classify_carbon(structure, first, outer, doubles)
     if number in _HALOGENS:

@@ -34,6 +34,7 @@ FAMILIES: dict[str, tuple[str, ...]] = {
     "stannyl": ("group 14",),
     "boryl": (),
     "oxo": (),
+    "ylidene": (),
     "hydrogen": (),
     "other": (),
 }

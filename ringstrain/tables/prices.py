@@ -148,6 +148,8 @@ class PriceBook:
         return price
 
     def _vicinal(self, x: Group, y: Group, both_equatorial: bool) -> Price:
+        if {x.kind, y.kind} & {"oxo", "ylidene"}:
+            return self.rule("double-bond-vicinal", pair_key(x.key, y.key))
         mixed = self._like_pairs("gauche", x, y)
         if mixed is not None:
             return mixed
