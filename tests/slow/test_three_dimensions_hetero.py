@@ -1,8 +1,8 @@
 """Rings with heteroatoms and planar atoms against three-dimensional structures.
 
 Outside check: RDKit's ETKDG embedding and MMFF94 force field.  Every conformer whose ring torsions lie near a state of
-the model must show the axial, equatorial and nitrogen sides that the model gives that state, and each favoured state
-must exist as such a conformer or be one that can be built.
+the model must show the axial, equatorial and nitrogen sides that the model gives that state, and the favoured ring
+shape of each structure must turn up among the conformers.
 """
 
 from __future__ import annotations
