@@ -316,13 +316,17 @@ def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Popul
 
 
 def _nitrogen(detail: Detail) -> list[tuple[int, str, bool]]:
-    """Each inverting nitrogen, where its hydrogen or group points, and whether it is a hydrogen."""
+    """Each inverting nitrogen, where its hydrogen or group points, and whether it is a hydrogen.
+
+    A ring-fusion nitrogen is left out: what it bears is a ring, axial to one ring and equatorial to another.
+    """
     found: dict[int, tuple[int, str, bool]] = {}
     kinds = detail.shapes.geometry.system.kinds
     if "inverting" not in kinds.values():
         return []
+    members = detail.shapes.geometry.system.atom_set
     for p in detail.facts.placed:
-        if kinds[p.site.ring_atom] == "inverting" and p.occupant != "lone pair":
+        if kinds[p.site.ring_atom] == "inverting" and p.occupant != "lone pair" and p.site.neighbour not in members:
             found.setdefault(p.site.ring_atom, (p.site.ring_atom, p.position, p.occupant == "hydrogen"))
     return [found[atom] for atom in sorted(found)]
 
@@ -341,16 +345,22 @@ def _remarks(structure: Structure, results: Sequence[SystemResult]) -> tuple[str
     notes = []
     if any(result.system.large for result in results):
         notes.append("A ring of eight or more members is fused on; its own conformers are not counted.")
-    inside = {a for result in results for a in result.system.atoms}
-    open_side = [
+    side = open_side_centres(structure, {a for result in results for a in result.system.atoms})
+    if side:
+        numbers = ", ".join(str(i + 1) for i in side)
+        notes.append(
+            f"Configuration at atom {numbers} (outside the six-rings) not given; it does not enter the answer."
+        )
+    return tuple(notes)
+
+
+def open_side_centres(structure: Structure, inside: set[int]) -> tuple[int, ...]:
+    """Stereocentres outside the six-membered rings whose configuration is not given, judged by constitution."""
+    return tuple(
         i
         for i in structure.fragment
         if i not in inside and structure.configurations[i] is None and _looks_stereogenic(structure, i)
-    ]
-    if open_side:
-        numbers = ", ".join(str(i + 1) for i in open_side)
-        notes.append(f"Configuration at atom {numbers} (side chain) not given; it does not enter the answer.")
-    return tuple(notes)
+    )
 
 
 def _looks_stereogenic(structure: Structure, atom: int) -> bool:

@@ -12,7 +12,7 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from itertools import product
 
-from ringstrain.analysis import group_map
+from ringstrain.analysis import group_map, open_side_centres
 from ringstrain.billing import axial_sites
 from ringstrain.closing import close_chairs
 from ringstrain.configurations import (
@@ -157,7 +157,7 @@ def rank_isomers(
         ),
         free_atoms=free,
         input_rank=rank,
-        notes=(*molecule.notes, *notes, *_remarks(total, free)),
+        notes=(*molecule.notes, *notes, *_remarks(total, free), *_left_open(molecule, systems)),
     )
 
 
@@ -165,6 +165,17 @@ def _remarks(total: int, free: tuple[int, ...]) -> tuple[str, ...]:
     if not free:
         return ("No ring stereocentre is free: the input is the only isomer.",)
     return (f"{total} configurations of {len(free)} centres counted on labelled atoms.",)
+
+
+def _left_open(molecule: Structure, systems: Sequence[RingSystem]) -> tuple[str, ...]:
+    """A word on centres outside the six-membered rings: they stay as they are, open ones included."""
+    side = open_side_centres(molecule, {a for system in systems for a in system.atoms})
+    if not side:
+        return ()
+    numbers = ", ".join(str(a + 1) for a in side)
+    return (
+        f"Configuration at atom {numbers} (outside the six-rings) not given and left so; its isomers are not told apart.",
+    )
 
 
 class _Ticker:
