@@ -8,34 +8,29 @@ come out of that count by themselves.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
-from itertools import product
+from collections.abc import Callable, Sequence
 
 from ringstrain.analysis import group_map, open_side_centres
 from ringstrain.billing import axial_sites
 from ringstrain.closing import close_chairs
+from ringstrain.compounds import Entry, Priced, Skeleton, gather_entries
 from ringstrain.configurations import (
-    Centres,
-    Compound,
     Signs,
     all_signs,
     find_centres,
     sort_compounds,
     stereogenic,
-    with_configuration,
 )
 from ringstrain.epimers import invertible_centres
 from ringstrain.equilibrium import Variables, blended, difference_sigma, mixture_energy, variables_of, weights
 from ringstrain.errors import OutOfScope, UsageError
-from ringstrain.ledger import Ledger, regime_of
-from ringstrain.ranking import Impossible, Isomer, Ranking, SymmetryWord
+from ringstrain.ledger import regime_of
+from ringstrain.ranking import Impossible, Isomer, Ranking
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
 from ringstrain.stereo import Resolved
 from ringstrain.structure.read import read
 from ringstrain.structure.records import Structure
-from ringstrain.symmetry import Groups
 from ringstrain.tables import Tables, load_tables
 from ringstrain.tables.conditions import make_conditions
 from ringstrain.tables.prices import PriceBook, price_book
@@ -44,26 +39,6 @@ from ringstrain.units import R_KCAL, ROOM_TEMPERATURE_K, Z95
 __all__ = ["Impossible", "Isomer", "Ranking", "rank_isomers"]
 #: More free centres than this are refused.
 MAX_FREE = 12
-
-
-@dataclass(frozen=True, slots=True)
-class _Skeleton:
-    """A ring system with its centres and the priced states of each configuration."""
-
-    system: RingSystem
-    groups: Groups
-    centres: Centres
-    free: tuple[int, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class _Priced:
-    """All states of one configuration of one ring system."""
-
-    energies: tuple[float, ...]
-    ledgers: tuple[Ledger, ...]
-    axial: tuple[int, ...]
-    shapes: tuple[str, ...]
 
 
 def rank_isomers(
@@ -127,7 +102,7 @@ def rank_isomers(
     total = math.prod(2 ** len(s.free) for s in skeletons)
     ticker = _Ticker(sum(2 ** len(s.free) for s in skeletons), progress)
     priced = [_price_all(s, molecule, book, ticker) for s in skeletons]
-    entries = list(_entries(molecule, skeletons, priced, book, enantiomers))
+    entries = list(gather_entries(molecule, skeletons, priced, enantiomers))
     possible = [entry for entry in entries if entry.reason is None]
     if not possible:
         raise OutOfScope(
@@ -174,7 +149,8 @@ def _left_open(molecule: Structure, systems: Sequence[RingSystem]) -> tuple[str,
         return ()
     numbers = ", ".join(str(a + 1) for a in side)
     return (
-        f"Configuration at atom {numbers} (outside the six-rings) not given and left so; its isomers are not told apart.",
+        f"Configuration at atom {numbers} (outside the six-rings) not given and left so; "
+        "isomers there are not told apart.",
     )
 
 
@@ -195,7 +171,7 @@ class _Ticker:
 
 def _skeletons(
     molecule: Structure, systems: Sequence[RingSystem], tables: Tables, at: Sequence[int] | None, epimerizable: bool
-) -> list[_Skeleton]:
+) -> list[Skeleton]:
     """Ring systems with the centres that may turn."""
     skeletons = []
     known: set[int] = set()
@@ -212,7 +188,7 @@ def _skeletons(
         free = tuple(a for a in centres.atoms if a in wanted)
         if len(free) <= MAX_FREE:
             free = stereogenic(centres, free)
-        skeletons.append(_Skeleton(system, groups, centres, free))
+        skeletons.append(Skeleton(system, groups, centres, free))
     strangers = sorted(set(at or ()) - known)
     if strangers:
         numbers = ", ".join(str(a + 1) for a in strangers)
@@ -229,11 +205,9 @@ def _skeletons(
     return skeletons
 
 
-def _price_all(
-    skeleton: _Skeleton, molecule: Structure, book: PriceBook, ticker: _Ticker
-) -> dict[Signs, _Priced | str]:
+def _price_all(skeleton: Skeleton, molecule: Structure, book: PriceBook, ticker: _Ticker) -> dict[Signs, Priced | str]:
     """States of every configuration of a system, or why it has none; one price serves a whole orbit."""
-    outcome: dict[Signs, _Priced | str] = {}
+    outcome: dict[Signs, Priced | str] = {}
     for compound in sort_compounds(skeleton.centres, all_signs(skeleton.centres, skeleton.free)):
         members = (*compound.members, *compound.mirrors)
         result = _price_one(skeleton, members[0], book)
@@ -243,7 +217,7 @@ def _price_all(
     return outcome
 
 
-def _price_one(skeleton: _Skeleton, signs: Signs, book: PriceBook) -> _Priced | str:
+def _price_one(skeleton: Skeleton, signs: Signs, book: PriceBook) -> Priced | str:
     geometry = skeleton.centres.geometry_of(signs)
     try:
         states = find_states(Resolved(geometry, close_chairs(geometry), ()), skeleton.groups, book)
@@ -251,7 +225,7 @@ def _price_one(skeleton: _Skeleton, signs: Signs, book: PriceBook) -> _Priced | 
         return error.problem
     states.sort(key=lambda item: item[2].total_kcal)
     shapes, facts, _ = states[0]
-    return _Priced(
+    return Priced(
         tuple(ledger.total_kcal for _, _, ledger in states),
         tuple(ledger for _, _, ledger in states),
         tuple(sorted({p.site.neighbour for p in axial_sites(facts)})),
@@ -259,142 +233,7 @@ def _price_one(skeleton: _Skeleton, signs: Signs, book: PriceBook) -> _Priced | 
     )
 
 
-@dataclass(frozen=True, slots=True)
-class _Entry:
-    """A compound across all ring systems, before ranking."""
-
-    structure: Structure
-    inverted: tuple[int, ...]
-    symmetry: SymmetryWord
-    count: int
-    parts: tuple[_Priced, ...]
-    reason: str | None
-
-
-@dataclass(frozen=True, slots=True)
-class _Side:
-    """A compound of one ring system, told from its enantiomer."""
-
-    members: tuple[Signs, ...]
-    mirrors: tuple[Signs, ...]
-    achiral: bool
-
-    @property
-    def nearest(self) -> Signs:
-        """The member with the fewest inverted centres."""
-        return min(self.members, key=_turned)
-
-    @property
-    def mirrored(self) -> _Side | None:
-        """The enantiomer, itself when achiral; None when the set does not hold it."""
-        if self.achiral:
-            return self
-        return _Side(self.mirrors, self.members, False) if self.mirrors else None
-
-
-def _handed(compounds: Sequence[Compound]) -> list[_Side]:
-    """Each compound of a system and, as a side of its own, its enantiomer."""
-    sides: list[_Side] = []
-    for compound in compounds:
-        side = _Side(compound.members, compound.mirrors, compound.achiral)
-        sides.append(side)
-        if compound.mirrors and (mirrored := side.mirrored) is not None:
-            sides.append(mirrored)
-    return sides
-
-
-def _turned(signs: Signs) -> int:
-    """How many centres are inverted."""
-    return sum(sign < 0 for sign in signs)
-
-
-@dataclass(slots=True)
-class _Pile:
-    """Combinations that are one entry, gathered."""
-
-    sides: tuple[_Side, ...]
-    chiral: bool
-    paired: bool
-    count: int = 0
-
-
-def _entries(
-    molecule: Structure,
-    skeletons: Sequence[_Skeleton],
-    priced: Sequence[dict[Signs, _Priced | str]],
-    book: PriceBook,
-    enantiomers: bool,
-) -> Iterator[_Entry]:
-    """Every compound: the product of the compounds of each system, enantiomer pairs as one unless asked."""
-    piles: dict[object, _Pile] = {}
-    sorted_systems = [_handed(sort_compounds(s.centres, all_signs(s.centres, s.free))) for s in skeletons]
-    for sides in product(*sorted_systems):
-        mirrored = tuple(m for side in sides if (m := side.mirrored) is not None)
-        own, mirror = _key(molecule, skeletons, sides), None
-        if len(mirrored) == len(sides):
-            mirror = _key(molecule, skeletons, mirrored)
-        chiral = mirror != own
-        paired = chiral and mirror is not None and not enantiomers
-        key = frozenset((own, mirror)) if paired else own
-        pile = piles.get(key)
-        if pile is None:
-            pile = piles[key] = _Pile(sides, chiral, paired)
-        elif _distance(sides) < _distance(pile.sides):
-            pile.sides = sides
-        pile.count += math.prod(len(side.members) for side in sides)
-    for pile in piles.values():
-        chosen = [side.nearest for side in pile.sides]
-        structure = _written(molecule, skeletons, pile.sides)
-        results = [table[signs] for table, signs in zip(priced, chosen, strict=True)]
-        reasons = [result for result in results if isinstance(result, str)]
-        yield _Entry(
-            structure,
-            tuple(
-                sorted(a for s, signs in zip(skeletons, chosen) for a, sign in zip(s.centres.atoms, signs) if sign < 0)
-            ),
-            _symmetry_word(structure, pile),
-            pile.count,
-            tuple(result for result in results if not isinstance(result, str)),
-            reasons[0] if reasons else None,
-        )
-
-
-def _distance(sides: Sequence[_Side]) -> int:
-    """How many centres the nearest member of each side inverts."""
-    return sum(_turned(side.nearest) for side in sides)
-
-
-def _key(molecule: Structure, skeletons: Sequence[_Skeleton], sides: Sequence[_Side]) -> object:
-    """What tells one compound from another; with several ring systems the molecule itself, since they may swap."""
-    if len(sides) == 1:
-        return min(sides[0].members)
-    return _written(molecule, skeletons, sides).smiles
-
-
-def _written(molecule: Structure, skeletons: Sequence[_Skeleton], sides: Sequence[_Side]) -> Structure:
-    """The molecule in the configuration nearest to the input."""
-    for skeleton, side in zip(skeletons, sides, strict=True):
-        molecule = with_configuration(molecule, skeleton.centres, side.nearest, _shown(skeleton))
-    return molecule
-
-
-def _shown(skeleton: _Skeleton) -> tuple[int, ...]:
-    """Centres whose configuration belongs into the SMILES."""
-    centres = skeleton.centres
-    given = {a for a, known in zip(centres.atoms, centres.given, strict=True) if known}
-    return tuple(a for a in centres.atoms if a in given or a in skeleton.free)
-
-
-def _symmetry_word(structure: Structure, pile: _Pile) -> SymmetryWord:
-    """What the entry is as a whole."""
-    if pile.chiral:
-        return "racemic" if pile.paired else "single enantiomer"
-    from ringstrain.structure.cip import cip_labels
-
-    return "meso" if any(label in "RS" for label in cip_labels(structure).values()) else "achiral"
-
-
-def _ranked(entries: Sequence[_Entry], book: PriceBook, free: tuple[int, ...] | None) -> list[Isomer]:
+def _ranked(entries: Sequence[Entry], book: PriceBook, free: tuple[int, ...] | None) -> list[Isomer]:
     """Entries turned into isomers, most stable first."""
     temperature = book.conditions.temperature_K
     rt = R_KCAL * temperature
@@ -445,6 +284,6 @@ def _ranked(entries: Sequence[_Entry], book: PriceBook, free: tuple[int, ...] | 
     return isomers
 
 
-def _unknown_key(entry: _Entry) -> tuple[object, ...]:
+def _unknown_key(entry: Entry) -> tuple[object, ...]:
     """The contacts without a price in the favoured state."""
     return tuple(sorted((*line.key, line.count) for part in entry.parts for line in part.ledgers[0].unknown))
