@@ -1,4 +1,4 @@
-"""Records of a file, one after the other, with memory that does not grow: .smi, .csv, .tsv and .sdf, plain or gzipped."""
+"""Records of a file, one after the other in flat memory: .smi, .csv, .tsv and .sdf, plain or gzipped."""
 
 from __future__ import annotations
 
@@ -54,7 +54,7 @@ class RecordReader:
             )
         try:
             self._size = self._path.stat().st_size
-            self._raw: IO[bytes] = open(self._path, "rb")
+            self._raw: IO[bytes] = open(self._path, "rb")  # noqa: SIM115 - closed in __exit__
         except OSError as error:
             raise InputError(f"The file {str(path)!r} cannot be read: {error.strerror}.", "Check the path.") from None
 

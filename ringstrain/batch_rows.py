@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from ringstrain.analysis import analyze
 from ringstrain.batch import Failure, failure_of, lost_worker
-from ringstrain.errors import ParseError, RingstrainError
+from ringstrain.errors import ParseError
 from ringstrain.results import Analysis, State, SystemResult
 from ringstrain.structure.read import read, read_molblock
 from ringstrain.tables import Tables, load_tables
@@ -252,9 +252,8 @@ def _isomers(structure: Structure, settings: Settings) -> dict[str, Any]:
             medium=settings.medium,
             tables=_tables(settings.table_file),
         )
-    except RingstrainError as error:
-        failure_of("", error)
-        return {}
+    except Exception as error:
+        return {"best_isomer": f"not ranked: {failure_of(structure.text, error).message}"}
     best = ranking.isomers[0] if ranking.isomers else None
     own = (
         ranking.isomers[ranking.input_rank - 1]

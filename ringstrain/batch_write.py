@@ -8,6 +8,7 @@ import io
 import json
 import math
 from collections.abc import Sequence
+from dataclasses import dataclass
 from pathlib import Path
 from typing import IO, Any, Protocol
 
@@ -19,6 +20,8 @@ from ringstrain.results import SCHEMA
 SUFFIXES = (".csv", ".tsv", ".jsonl", ".sdf", ".parquet")
 _END_OF_BLOCK = b"$$$$\n"
 _PARQUET_ROWS = 10_000
+#: No row is longer than this [bytes]: an input has 100 kB at most.
+_LONGEST_ROW = 4_000_000
 _WHOLE = ("input_line", "isomers", "input_rank")
 _SINGLE_FLOATS = ("input_dG_kcal", "best_share")
 
@@ -33,8 +36,16 @@ class Writer(Protocol):
         """The end of the file."""
 
 
-def open_writer(path: str | Path, columns: Sequence[str], *, resume: bool) -> tuple[Writer, int]:
-    """A writer for a path, and how many rows the file already holds.
+@dataclass(frozen=True, slots=True)
+class Kept:
+    """What is left of an earlier run: whole rows, and where they end [bytes]."""
+
+    rows: int = 0
+    end: int = 0
+
+
+def open_writer(path: str | Path, columns: Sequence[str], kept: Kept | None = None) -> Writer:
+    """A writer for a path.
 
     Parameters
     ----------
@@ -42,41 +53,55 @@ def open_writer(path: str | Path, columns: Sequence[str], *, resume: bool) -> tu
         Output; its suffix decides the format.
     columns
         Columns of a row.
-    resume
-        True to keep the whole rows of an earlier run and go on after them.
+    kept
+        Rows of an earlier run to go on after; None to begin.
 
     Raises
     ------
     UsageError
-        If the suffix is unknown, or a format cannot be resumed.
+        If the suffix is unknown or a package is missing.
     InputError
-        If the file cannot be written, or holds something else than such rows.
+        If the file cannot be written.
     """
-    kind = suffix_of(path, SUFFIXES)
-    packed = str(path).lower().endswith(".gz")
-    if not kind or (packed and kind == ".parquet"):
-        raise UsageError(f"{str(path)!r} is no output we can write.", f"Use one of {', '.join(SUFFIXES)}.")
-    if resume and (packed or kind == ".parquet"):
-        raise UsageError(
-            "A .gz or .parquet output cannot be resumed.", "Write .csv, .tsv, .jsonl or .sdf, and pack it after."
-        )
+    kind = _kind(path)
     try:
         if kind == ".parquet":
-            return _ParquetWriter(Path(path), columns), 0
-        done = keep_whole_rows(Path(path), kind, columns) if resume else 0
-        stream = _open(Path(path), packed=packed, append=done > 0)
+            return _ParquetWriter(Path(path), columns)
+        stream = _open(Path(path), kept or Kept())
     except OSError as error:
         raise InputError(f"The file {str(path)!r} cannot be written: {error.strerror}.", "Check the path.") from None
-    head = _header(kind, columns)
-    if not done and head:
-        stream.write(head)
-    return _TextWriter(stream, kind), done
+    if kept is None or not kept.rows:
+        stream.write(_header(kind, columns))
+    return _TextWriter(stream, kind)
 
 
-def _open(path: Path, *, packed: bool, append: bool) -> IO[bytes]:
-    if packed:  # no name and no time inside, so that equal rows give equal bytes
+def _kind(path: str | Path) -> str:
+    """Format of an output.
+
+    Raises
+    ------
+    UsageError
+        If the suffix is unknown.
+    """
+    kind = suffix_of(path, SUFFIXES)
+    if not kind or (_is_packed(path) and kind == ".parquet"):
+        raise UsageError(f"{str(path)!r} is no output we can write.", f"Use one of {', '.join(SUFFIXES)}.")
+    return kind
+
+
+def _is_packed(path: str | Path) -> bool:
+    return str(path).lower().endswith(".gz")
+
+
+def _open(path: Path, kept: Kept) -> IO[bytes]:
+    if _is_packed(path):  # no name and no time inside, so that equal rows give equal bytes
         return gzip.GzipFile(filename="", mode="wb", fileobj=open(path, "wb"), mtime=0)  # type: ignore[return-value]
-    return open(path, "ab" if append else "wb")
+    if not kept.rows:
+        return open(path, "wb")
+    stream = open(path, "r+b")  # noqa: SIM115 - closed by the writer
+    stream.seek(kept.end)
+    stream.truncate()
+    return stream
 
 
 def _header(kind: str, columns: Sequence[str]) -> bytes:
@@ -85,63 +110,76 @@ def _header(kind: str, columns: Sequence[str]) -> bytes:
     return _separated(columns, "\t" if kind == ".tsv" else ",").encode()
 
 
-def keep_whole_rows(path: Path, kind: str, columns: Sequence[str]) -> int:
-    """Cut a torn last row off a file; how many whole rows are left.
+def find_rows(path: str | Path, columns: Sequence[str]) -> Kept:
+    """The whole rows an earlier run left; a torn last row is not among them.  Nothing is changed yet.
 
     Raises
     ------
+    UsageError
+        If the format cannot be resumed.
     InputError
-        If the file does not begin as ours do.
+        If the file does not begin as ours do, or cannot be read.
     """
-    if not path.exists():
-        return 0
+    kind = _kind(path)
+    if _is_packed(path) or kind == ".parquet":
+        raise UsageError(
+            "A .gz or .parquet output cannot be resumed.", "Write .csv, .tsv, .jsonl or .sdf, and pack it afterwards."
+        )
+    if not Path(path).exists():
+        return Kept()
     head = _header(kind, columns)
-    mark = _END_OF_BLOCK if kind == ".sdf" else b"\n"
-    rows = end = position = 0
-    with open(path, "r+b") as stream:
-        if head and (first := stream.read(len(head))) != head:
-            if head.startswith(first):
-                stream.truncate(0)
-                return 0
-            raise InputError(
-                f"{str(path)!r} does not begin with the header of this run.",
-                "Resume with the options of the first run, or write another file.",
-            )
-        end = position = len(head)
-        for line in stream:
-            position += len(line)
-            if line.endswith(b"\n") and (kind != ".sdf" or line == mark):
-                rows += 1
-                end = position
-        stream.truncate(end if rows or head else 0)
-    return rows
+    rows = 0
+    try:
+        with open(path, "rb") as stream:
+            first = stream.read(len(head))
+            if first != head:
+                if head.startswith(first):
+                    return Kept()
+                raise InputError(
+                    f"{str(path)!r} does not begin with the header of this run.",
+                    "Resume with the options of the first run, or write another file.",
+                )
+            end = position = len(head)
+            for line in stream:
+                position += len(line)
+                if line == _END_OF_BLOCK if kind == ".sdf" else line.endswith(b"\n"):
+                    rows += 1
+                    end = position
+    except OSError as error:
+        raise InputError(f"The file {str(path)!r} cannot be read: {error.strerror}.", "Check the path.") from None
+    return Kept(rows, end)
 
 
-def check_last_row(path: Path, record: BatchRecord) -> None:
-    """Make sure that the last row of a resumed file belongs to a record of this input.
+def check_last_row(path: str | Path, kept: Kept, record: BatchRecord, columns: Sequence[str]) -> None:
+    """Make sure that the last whole row of a file belongs to a record of this input.
 
     Raises
     ------
     InputError
         If it does not.
     """
-    kind = suffix_of(path, SUFFIXES)
+    kind = _kind(path)
     with open(path, "rb") as stream:
-        stream.seek(0, io.SEEK_END)
-        stream.seek(max(0, stream.tell() - 4_000_000))
-        tail = stream.read().decode("utf-8", "backslashreplace")
-    if kind == ".jsonl":
-        found = json.loads(tail.rstrip("\n").rpartition("\n")[2])
-        line, shown = str(found.get("input_line")), found.get("input")
-    elif kind == ".sdf":
-        block = tail.rstrip("\n").removesuffix("$$$$").rpartition("$$$$\n")[2]
-        line, shown = _data_item(block, "input_line"), _data_item(block, "input")
-    else:
-        last = next(csv.reader([tail.rstrip("\n").rpartition("\n")[2]], delimiter="\t" if kind == ".tsv" else ","))
-        line, shown = last[0], last[2]
-    if line != str(record.line) or shown != _flat(record.shown):
+        start = max(0, kept.end - _LONGEST_ROW)
+        stream.seek(start)
+        tail = stream.read(kept.end - start).decode("utf-8", "backslashreplace").rstrip("\n")
+    try:
+        if kind == ".jsonl":
+            found = json.loads(tail.rpartition("\n")[2])
+            line, shown = str(found["input_line"]), found["input"]
+            same = tuple(found)[2:] == tuple(columns)
+        elif kind == ".sdf":
+            block = tail.removesuffix("$$$$").rpartition("$$$$\n")[2]
+            line, shown, same = _data_item(block, "input_line"), _data_item(block, "input"), True
+        else:
+            cells = next(csv.reader([tail.rpartition("\n")[2]], delimiter="\t" if kind == ".tsv" else ","))
+            line, shown, same = cells[0], cells[2], True
+    except (ValueError, KeyError, TypeError, IndexError, StopIteration):
+        line, shown, same = "?", "", False
+    if not same or line != str(record.line) or _flat(shown) != _flat(record.shown):
         raise InputError(
-            f"Row {line} of {str(path)!r} does not belong to this input.", "Resume with the input of the first run."
+            f"The rows of {str(path)!r} do not belong to this run (row of line {line}).",
+            "Resume with the input and the options of the first run.",
         )
 
 

@@ -17,10 +17,20 @@ Outcome = TypeVar("Outcome")
 
 
 def in_chunks(items: Iterable[Item], size: int) -> Iterator[tuple[Item, ...]]:
-    """The items a few at a time."""
-    stream = iter(items)
-    while chunk := tuple(islice(stream, size)):
-        yield chunk
+    """The items a few at a time; when their source breaks off, what came before is handed out first."""
+    part: list[Item] = []
+    try:
+        for item in items:
+            part.append(item)
+            if len(part) == size:
+                yield tuple(part)
+                part = []
+    except RingstrainError:
+        if part:
+            yield tuple(part)
+        raise
+    if part:
+        yield tuple(part)
 
 
 def open_pool(workers: int) -> ProcessPoolExecutor:
@@ -124,7 +134,8 @@ def run_in_order(
     Raises
     ------
     RingstrainError
-        What ``work`` raises on purpose, because every item would fail alike.
+        What ``work`` raises on purpose, because every item would fail alike; what the source raises, after the outcomes
+        of all that came before.
 
     Notes
     -----
@@ -133,12 +144,16 @@ def run_in_order(
     """
     chunks = in_chunks(items, chunk)
     waiting: deque[tuple[tuple[Item, ...], Future[list[Outcome]], int]] = deque()
+    broken_off: RingstrainError | None = None
     try:
         while True:
-            for part in islice(chunks, window - len(waiting)):
-                waiting.append((part, crew.submit(work, part), crew.generation))
+            try:
+                for part in islice(chunks, window - len(waiting)):
+                    waiting.append((part, crew.submit(work, part), crew.generation))
+            except RingstrainError as error:
+                broken_off, chunks = error, iter(())
             if not waiting:
-                return
+                break
             part, future, generation = waiting.popleft()
             try:
                 outcomes = future.result()
@@ -153,6 +168,8 @@ def run_in_order(
                 )
             else:
                 yield from outcomes
+        if broken_off is not None:
+            raise broken_off
     finally:
         for _, future, _ in waiting:
             future.cancel()

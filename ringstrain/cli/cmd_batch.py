@@ -7,7 +7,7 @@ import sys
 import time
 from collections.abc import Callable, Iterator
 from concurrent.futures import Executor
-from contextlib import closing
+from contextlib import closing, contextmanager
 from functools import partial
 from itertools import chain, islice
 from pathlib import Path
@@ -16,11 +16,13 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from ringstrain.cli import common
-from ringstrain.errors import UsageError
+from ringstrain.errors import InputError, RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.batch_read import RecordReader
     from ringstrain.batch_rows import BatchRecord, Row, Settings
+    from ringstrain.batch_write import Kept
+    from ringstrain.crew import Crew
 
 HELP = """One row for each record of a file: status, axial groups, gap, K, population.
 
@@ -104,17 +106,44 @@ def batch(
     if Path(file).exists() and Path(output).exists() and os.path.samefile(file, output):
         raise UsageError("Input and output are the same file.", "Write to another one.")
     from ringstrain.batch_read import RecordReader
-    from ringstrain.batch_write import open_writer
+    from ringstrain.batch_rows import answer_chunk, lost_row
+    from ringstrain.batch_write import Kept, find_rows, open_writer
+    from ringstrain.crew import run_in_order
 
     with RecordReader(file, smiles_column=smiles_column, id_column=id_column) as reader:
-        records = iter(reader)
-        first = list(islice(records, FEW))
-        writer, done = open_writer(output, settings.columns, resume=resume)
-        with closing(writer):
-            count = workers or (1 if len(first) < FEW else os.cpu_count() or 1)
-            rest = _skip(chain(first, records), done, output)
-            rows = _rows(rest, settings, count, scheduler)
-            return _write_all(rows, writer.write, reader, done=done, quiet=quiet, strict=strict)
+        few, records = _peek(iter(reader))
+        kept = find_rows(output, settings.columns) if resume else Kept()
+        records = _skip(records, kept, output, settings)
+        number = workers or (1 if few else os.cpu_count() or 1)
+        with (
+            _engage(number, scheduler) as (crew, chunk, window),
+            closing(open_writer(output, settings.columns, kept)) as writer,
+        ):
+            rows = run_in_order(
+                records,
+                partial(answer_chunk, settings=settings),
+                lambda record, error: lost_row(record, settings),
+                crew=crew,
+                chunk=chunk,
+                window=window,
+            )
+            return _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet, strict=strict)
+
+
+def _peek(records: Iterator[BatchRecord]) -> tuple[bool, Iterator[BatchRecord]]:
+    """Whether there are few records, and all of them; a source that breaks off does so in its place."""
+    first: list[BatchRecord] = []
+    try:
+        first.extend(islice(records, FEW))
+    except RingstrainError as error:
+        return True, chain(first, _raising(error))
+    return len(first) < FEW, chain(first, records)
+
+
+def _raising(error: RingstrainError) -> Iterator[BatchRecord]:
+    """A source that breaks off at once."""
+    yield from ()
+    raise error
 
 
 def _settings(
@@ -151,53 +180,38 @@ def _settings(
     )
 
 
-def _skip(records: Iterator[BatchRecord], done: int, output: str) -> Iterator[BatchRecord]:
+def _skip(records: Iterator[BatchRecord], kept: Kept, output: str, settings: Settings) -> Iterator[BatchRecord]:
     """The records that have no row yet; the last one that has is checked against it."""
-    if not done:
+    if not kept.rows:
         return records
     from ringstrain.batch_write import check_last_row
-    from ringstrain.errors import InputError
 
-    last = None
-    count = 0
-    for last in islice(records, done):
-        count += 1
-    if last is None or count < done:
+    done = next(islice(records, kept.rows - 1, None), None)
+    if done is None:
         raise InputError(
             f"{output!r} holds more rows than the input has records.", "Resume with the input of the first run."
         )
-    check_last_row(Path(output), last)
+    check_last_row(output, kept, done, settings.columns)
     return records
 
 
-def _rows(records: Iterator[BatchRecord], settings: Settings, workers: int, scheduler: str | None) -> Iterator[Row]:
-    """Rows in order."""
-    from ringstrain.batch_rows import answer_chunk, lost_row
-    from ringstrain.crew import Crew, Inline, open_pool, run_in_order
+@contextmanager
+def _engage(workers: int, scheduler: str | None) -> Iterator[tuple[Crew, int, int]]:
+    """Who works, how many records they take at once, and how many such chunks are under way."""
+    from ringstrain.crew import Crew, Inline, open_pool
 
-    window, chunk = 1, 1
     if scheduler is not None:
-        executor, cores = _open_cluster(scheduler)
-        crew = Crew(executor)
-        window, chunk = 4 * cores, _CHUNK
+        with closing(_open_cluster(scheduler)) as client:
+            yield Crew(client.get_executor(pure=False)), _CHUNK, 4 * max(1, sum(client.nthreads().values()))
     elif workers == 1:
-        crew = Crew(Inline())
+        yield Crew(Inline()), 1, 1
     else:
         reopen: Callable[[], Executor] = partial(open_pool, workers)
-        crew = Crew(reopen(), reopen)
-        window, chunk = 3 * workers, _CHUNK
-    return run_in_order(
-        records,
-        partial(answer_chunk, settings=settings),
-        lambda record, error: lost_row(record, settings),
-        crew=crew,
-        chunk=chunk,
-        window=window,
-    )
+        yield Crew(reopen(), reopen), _CHUNK, 3 * workers
 
 
-def _open_cluster(address: str) -> tuple[Executor, int]:
-    """The executor of a Dask cluster and how many threads it has."""
+def _open_cluster(address: str) -> Any:
+    """The client of a Dask cluster."""
     try:
         from distributed import Client
     except ImportError:
@@ -205,12 +219,11 @@ def _open_cluster(address: str) -> tuple[Executor, int]:
             "--scheduler needs the dask package.", "Install it with `pip install 'ringstrain[dask]'`."
         ) from None
     try:
-        client: Any = Client(address, timeout="10s")
+        return Client(address, timeout="10s")
     except (OSError, ValueError) as error:
         raise UsageError(
             f"No Dask scheduler answers at {address} ({type(error).__name__}).", "Check the address."
         ) from None
-    return client.get_executor(pure=False), max(1, sum(client.nthreads().values()))
 
 
 def _write_all(
