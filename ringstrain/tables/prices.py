@@ -18,6 +18,10 @@ from ringstrain.tables.records import Claim, Tables, pair_key
 from ringstrain.tables.select import Selection, select
 
 
+#: Prices kept before the memory starts afresh.
+_MOST_REMEMBERED = 20_000
+
+
 class PriceBook:
     """Prices of one set of tables under one set of conditions.
 
@@ -34,6 +38,13 @@ class PriceBook:
         self.conditions = conditions
         self._memory: dict[tuple[str, ...], Price] = {}
 
+    def _remember(self, key: tuple[str, ...], price: Price) -> Price:
+        """Keep a price for the next molecule; a library of exotic groups must not fill the memory."""
+        if len(self._memory) >= _MOST_REMEMBERED:
+            self._memory.clear()
+        self._memory[key] = price
+        return price
+
     # ---- A-values ------------------------------------------------------------------------------------------
 
     def a_value(self, group: Group) -> Price:
@@ -46,7 +57,7 @@ class PriceBook:
         memory_key = ("A", group.key, group.kind)
         price = self._memory.get(memory_key)
         if price is None:
-            price = self._memory[memory_key] = self._a_value(group)
+            price = self._remember(memory_key, self._a_value(group))
         return price
 
     def _a_value(self, group: Group) -> Price:
@@ -144,7 +155,7 @@ class PriceBook:
         memory_key = ("g", x.key, y.key, x.kind, y.kind, str(both_equatorial))
         price = self._memory.get(memory_key)
         if price is None:
-            price = self._memory[memory_key] = self._vicinal(x, y, both_equatorial)
+            price = self._remember(memory_key, self._vicinal(x, y, both_equatorial))
         return price
 
     def _vicinal(self, x: Group, y: Group, both_equatorial: bool) -> Price:
@@ -189,7 +200,7 @@ class PriceBook:
                     or self._combined("syn_axial", x, y)
                     or self._unknown("syn-axial term", x, y)
                 )
-            self._memory[memory_key] = price
+            self._remember(memory_key, price)
         return price
 
     def geminal(self, axial: Group, equatorial: Group) -> Price:
@@ -197,7 +208,7 @@ class PriceBook:
         memory_key = ("c", axial.key, equatorial.key, axial.kind, equatorial.kind)
         price = self._memory.get(memory_key)
         if price is None:
-            price = self._memory[memory_key] = self._geminal(axial, equatorial)
+            price = self._remember(memory_key, self._geminal(axial, equatorial))
         return price
 
     def _geminal(self, axial: Group, equatorial: Group) -> Price:
@@ -263,7 +274,7 @@ class PriceBook:
         memory_key = ("rule", name, group)
         price = self._memory.get(memory_key)
         if price is None:
-            price = self._memory[memory_key] = self._rule(name, group)
+            price = self._remember(memory_key, self._rule(name, group))
         return price
 
     def _rule(self, name: str, group: str) -> Price:
@@ -310,6 +321,8 @@ class PriceBook:
 
     def _pair_medium(self, x: Group, y: Group) -> str | None:
         """Medium to look in for a pair that can bind by hydrogen: it depends on what the solvent accepts."""
+        if self.conditions.medium != "protic" and any(a.donor and b.kind == "halogen" for a, b in ((x, y), (y, x))):
+            return "polar"  # a hydrogen bond to halogen does for the pair what a polar medium does
         if not ((x.donor and y.acceptor) or (y.donor and x.acceptor)):
             return None
         if not self.conditions.accepts_hydrogen_bonds:
