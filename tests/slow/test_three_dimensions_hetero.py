@@ -87,6 +87,12 @@ SKELETONS = (
     ("pyranose", "OCC1OC(O)C(O)C(O)C1O", 4),
     ("methyl pyranoside", "COC1OCC(O)C(O)C1O", 2),
     ("deoxyfluoro sugar", "OCC1OC(F)CC(O)C1O", 2),
+    ("2-cyclohexenone", "CC1CC(C)C(=O)C=C1", 2),
+    ("dihydrocarvone, carvone", "CC1=CCC(C(C)=C)CC1=O", 1),
+    ("enone, 4-substituted", "CC1C=CC(=O)CC1C", 2),
+    ("octalone", "CC1CCC2=CC(=O)CCC2C1", 2),
+    ("N-acyl-tetrahydroisoquinoline", "CC1N(C(C)=O)CCc2ccccc12", 1),
+    ("N-acyltetrahydropyridine", "CC1CC=CCN1C(C)=O", 1),
     ("thiane S-oxide", "CC1CCCS(=O)C1", 2),
     ("phosphorinane", "CC1CCP(C)CC1", 2),
 )
