@@ -190,6 +190,18 @@ def test_the_overview_has_one_line_for_each_group_and_class() -> None:
     assert {f.verdict for f in lines} == {"open"}
 
 
+def test_doubts_about_the_molecule_are_noted() -> None:
+    # Common practice, no source: rings with heteroatoms, polar neighbours, cold solutions and ties deserve a warning.
+    def notes(smiles: str, temperature_K: float = 298.15) -> str:
+        return " ".join(react(analyze(smiles, temperature_K=temperature_K)).notes)
+
+    assert "carbocycles" in notes("C[C@@H]1CC[C@@H](O)CO1")
+    assert "solvent" in notes("O[C@H]1CCCC[C@@H]1Br")
+    assert "flips more slowly" in notes("C[C@H]1CCCC[C@@H]1Br", 150.0)
+    assert "about equal" in notes("CC(C)(C)C1CCC(=O)CC1")
+    assert "about equal" not in notes("C1=CCCCC1")
+
+
 def test_nothing_that_reacts_is_an_empty_answer() -> None:
     assert react(analyze("CC1CCCCC1")).findings == ()
 

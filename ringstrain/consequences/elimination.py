@@ -22,7 +22,7 @@ from ringstrain.consequences.products import alkene
 from ringstrain.consequences.request import Request
 from ringstrain.consequences.rulebook import rule
 from ringstrain.consequences.scene import Scene, has_boat, numbers
-from ringstrain.structure.edit import Draft, cut_branch
+from ringstrain.structure.edit import Draft, constitution_ranks, cut_branch
 from ringstrain.units import R_KCAL
 
 CAUTION = (
@@ -267,8 +267,10 @@ def _dehalogenations(scene: Scene, leaving: Leaving, *, weigh: bool) -> list[Opt
     """Loss of two vicinal leaving groups with zinc or iodide; each pair once."""
     structure, centre = scene.structure, leaving.carbon
     found: list[Option] = []
+    # Each pair once, from the carbon of lower rank, so that nothing depends on the numbering.
+    ranks = constitution_ranks(structure)
     for n in scene.ring_neighbours(centre):
-        if n < centre:
+        if (ranks[n], n) < (ranks[centre], centre):
             continue
         for x in scene.outer(n):
             name = leaving_name(structure, n, x)
@@ -285,6 +287,7 @@ def _dehalogenations(scene: Scene, leaving: Leaving, *, weigh: bool) -> list[Opt
                     "diaxial "
                     "isomer need not be the fast one."
                 )
+            centres = (centre,) if weigh else ()
             shared = {
                 "reaction": "e2",
                 "ring_system": scene.number,
@@ -310,7 +313,7 @@ def _dehalogenations(scene: Scene, leaving: Leaving, *, weigh: bool) -> list[Opt
                     **shared,  # type: ignore[arg-type]
                 )
                 weight = scene.shares[state.id] if weigh else None
-                found.append(Option(finding=finding, weight=weight, sigma_ln=scene.sigma_ln(state), centres=(centre,)))
+                found.append(Option(finding=finding, weight=weight, sigma_ln=scene.sigma_ln(state), centres=centres))
             if not anti:
                 finding = Finding(
                     verdict="locked out",
@@ -321,5 +324,5 @@ def _dehalogenations(scene: Scene, leaving: Leaving, *, weigh: bool) -> list[Opt
                     limits=tuple(limits),
                     **shared,  # type: ignore[arg-type]
                 )
-                found.append(Option(finding=finding, centres=(centre,)))
+                found.append(Option(finding=finding, centres=centres))
     return found

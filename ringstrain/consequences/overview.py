@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Any
 
@@ -11,8 +12,11 @@ from ringstrain.consequences.finding import Finding, Verdict
 from ringstrain.consequences.reduction import REAGENTS as KETONE_REAGENTS
 from ringstrain.consequences.request import Request
 from ringstrain.consequences.rulebook import rule
-from ringstrain.consequences.scene import scenes
+from ringstrain.consequences.scene import has_boat, scenes
+from ringstrain.structure.edit import mirror, tidy_smiles
+from ringstrain.structure.read import read
 from ringstrain.tables.records import Tables
+from ringstrain.units import R_KCAL
 
 _ORDER: tuple[Verdict, ...] = ("open", "needs the flip", "needs a boat", "locked out")
 
@@ -120,6 +124,9 @@ def _notes(analysis: Analysis, findings: tuple[Finding, ...]) -> tuple[str, ...]
     drawn = any(finding.product_smiles and "@" in finding.product_smiles for finding in findings)
     if drawn and any(scene.settled.configurations != scene.structure.configurations for scene in scenes(analysis)):
         notes.append("A centre without configuration becomes one in the product: relative configuration is written.")
+    if findings:
+        notes.extend(_doubts(analysis))
+        notes.extend(_ties(analysis, findings))
     if findings and analysis.temperature_K < rule("exchange-limit").number:
         notes.append(
             "At this temperature a ring flips more slowly than it reacts: shares follow ground-state populations, and "
@@ -128,6 +135,40 @@ def _notes(analysis: Analysis, findings: tuple[Finding, ...]) -> tuple[str, ...]
     if analysis.medium == "protic" or analysis.conditions.medium == "protic":
         notes.append("Amines and acids may be ionised in this medium.")
     return tuple(notes)
+
+
+def _doubts(analysis: Analysis) -> list[str]:
+    """Reasons not to trust the rules on this molecule, whatever the class."""
+    found = []
+    for scene in scenes(analysis):
+        where = f"Ring system {scene.number + 1}: " if len(analysis.ring_systems) > 1 else ""
+        equilibrium = scene.result.equilibrium
+        if has_boat(scene.states[0]):
+            found.append(f"{where}the best shape is a twist-boat; rules for chairs may not hold.")
+        if scene.is_rough:
+            found.append(f"{where}a contact has no tabulated price; populations are rough.")
+        if equilibrium is not None and equilibrium.regime == "polar":
+            found.append(f"{where}polar groups meet; populations depend on the solvent (--medium).")
+        if any(analysis.structure.atoms[a].number != 6 for a in scene.ring_atoms):
+            found.append(f"{where}heteroatom in the ring; the numbers of the rules come from carbocycles.")
+    return [note[0].upper() + note[1:] for note in found]
+
+
+def _ties(analysis: Analysis, findings: tuple[Finding, ...]) -> list[str]:
+    """Classes whose two main products come out about equal, mirror images counted as one."""
+    found = []
+    for name in dict.fromkeys(finding.reaction for finding in findings):
+        totals: dict[str, float] = {}
+        for finding in findings:
+            if finding.reaction == name and finding.product_smiles and finding.share is not None:
+                image = tidy_smiles(mirror(read(finding.product_smiles)))
+                key = min(finding.product_smiles, image)
+                totals[key] = totals.get(key, 0.0) + finding.share
+        best = sorted(totals.values(), reverse=True)[:2]
+        close = math.exp(rule("about-equal").number / (R_KCAL * analysis.temperature_K))
+        if len(best) == 2 and best[0] < close * best[1]:
+            found.append(f"{name}: the two main products come out about equal; the difference is within the error.")
+    return found
 
 
 def best_of(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:

@@ -88,7 +88,9 @@ def _of_state(scene: Scene, request: Request, leaving: Leaving, state: State) ->
         reagent="nucleophile",
         sources=factor.sources,
     )
-    centres = () if leaving.is_outside else (carbon,)
+    # No number tells how much slower a blocked isomer is, so no rate beside its epimer is given.
+    blocked = any("very slow" in limit or "no SN2" in limit for limit in limits)
+    centres = () if leaving.is_outside or blocked else (carbon,)
     return Option(finding=finding, weight=weight, sigma_ln=scene.sigma_ln(state, sigma), centres=centres)
 
 
