@@ -11,12 +11,12 @@ import math
 from functools import lru_cache
 
 from ringstrain.provenance import Price, Term, scaled
+from ringstrain.tables.combining import geminal_guess, product_rule, unpriced
 from ringstrain.tables.conditions import Conditions
 from ringstrain.tables.groups import Group
 from ringstrain.tables.kinship import StandIn, energy_of, kin_of
 from ringstrain.tables.records import Claim, Tables, pair_key
 from ringstrain.tables.select import Selection, select
-
 
 #: Prices kept before the memory starts afresh.
 _MOST_REMEMBERED = 20_000
@@ -131,7 +131,7 @@ class PriceBook:
             )
         first, second = self.a_value(a), self.a_value(d)
         if first.value_kcal is None or second.value_kcal is None:
-            return self._unknown("ring fusion", a, d)
+            return unpriced("ring fusion", a, d)
         return Price(
             value_kcal=(first.value_kcal + second.value_kcal) / 4,
             terms=(*scaled(first.terms, 0.25), *scaled(second.terms, 0.25)),
@@ -167,7 +167,7 @@ class PriceBook:
         found = self._find("gauche", x, y)
         if found is not None and found[0].claim.form == "ee-ae":
             chosen = found[0]
-            base = self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
+            base = product_rule(self.tables, "vicinal", x, y) or unpriced("vicinal term", x, y)
             if base.value_kcal is None:
                 return base
             claim = chosen.claim
@@ -184,7 +184,7 @@ class PriceBook:
             )
         if found is not None:
             return self._pair_price(x, y, *found)
-        return self._combined("vicinal", x, y) or self._unknown("vicinal term", x, y)
+        return product_rule(self.tables, "vicinal", x, y) or unpriced("vicinal term", x, y)
 
     def syn_axial(self, x: Group, y: Group) -> Price:
         """Whole contact of two groups that stand syn-axial (or peri)."""
@@ -197,8 +197,8 @@ class PriceBook:
             else:
                 price = (
                     self._like_pairs("syndiaxial", x, y)
-                    or self._combined("syn_axial", x, y)
-                    or self._unknown("syn-axial term", x, y)
+                    or product_rule(self.tables, "syn_axial", x, y)
+                    or unpriced("syn-axial term", x, y)
                 )
             self._remember(memory_key, price)
         return price
@@ -229,24 +229,7 @@ class PriceBook:
                 known_by=claim.known_by,
                 note="reference chair of the pair",
             )
-        pair = {axial.kind, equatorial.kind}
-        kind = (
-            "geminal-aryl"
-            if "aryl" in pair and any(k.endswith("alkyl") or k == "methyl" for k in pair)
-            else "geminal-round"
-            if axial.round and equatorial.round
-            else "geminal-rotor"
-        )
-        rule = self.tables.row(f"rules/{kind}")
-        return Price(
-            value_kcal=energy_of(rule),
-            terms=(Term(rule.row, pair_key(axial.key, equatorial.key), 1.0, rule.uncertainty or 0.0),),
-            row=rule.row,
-            source=rule.source or "estimate",
-            known_by=rule.known_by,
-            estimated=True,
-            note="no row for this pair on one carbon: taken as zero, wide",
-        )
+        return geminal_guess(self.tables, axial, equatorial)
 
     def across(self, x: Group, y: Group) -> Price | None:
         """Dipole term of two axial halogens on opposite ring atoms, or None when no row covers the pair.
@@ -349,7 +332,7 @@ class PriceBook:
             else:
                 a, b = self.a_of(first), self.a_of(second)
                 if a.value_kcal is None or b.value_kcal is None:
-                    return self._unknown("A-value", x, y)
+                    return unpriced("A-value", x, y)
                 value += share[0] * a.value_kcal + share[1] * b.value_kcal
                 terms = (own, *scaled(a.terms, share[0]), *scaled(b.terms, share[1]))
         return Price(
@@ -387,43 +370,6 @@ class PriceBook:
             estimated=True,
             polar=True,
             note="estimated: mean of the two like pairs",
-        )
-
-    def _combined(self, which: str, x: Group, y: Group) -> Price | None:
-        """Product rule: each group against methyl, scaled to methyl against methyl; never for two polar groups."""
-        if x.polar and y.polar:
-            return None
-        sizes = self.tables.sizes
-        first = next((sizes[n] for n in (x.key, x.kind) if n in sizes), None)
-        second = next((sizes[n] for n in (y.key, y.kind) if n in sizes), None)
-        if first is None or second is None:
-            return None
-        methyl = sizes["methyl"]
-        a, b, unit = (getattr(s, which) for s in (first, second, methyl))
-        da, db = (getattr(s, f"{which}_uncertainty") for s in (first, second))
-        value = a * b / unit
-        sigma = math.hypot(da * b / unit, db * a / unit) if first.key != second.key else (da + db) * a / unit
-        row = "sizes/" + "+".join(sorted((first.key, second.key)))
-        return Price(
-            value_kcal=value,
-            terms=(Term(row, pair_key(x.key, y.key), 1.0, sigma),),
-            row=row,
-            source="combining rule",
-            known_by="computed",
-            estimated=True,
-            note="estimated by the combining rule",
-        )
-
-    def _unknown(self, what: str, x: Group, y: Group) -> Price:
-        """A contact nobody can price."""
-        return Price(
-            value_kcal=None,
-            row=f"unknown/{what}/{pair_key(x.key, y.key)}",
-            source="",
-            known_by="computed",
-            estimated=True,
-            polar=x.polar and y.polar,
-            note=f"no {what} is tabulated for this pair",
         )
 
 

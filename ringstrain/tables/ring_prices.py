@@ -206,9 +206,9 @@ def _scaled_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
         anomeric = place.has_near("O", "S") and group.kind in ("oxy", "acyloxy", "silyloxy", "halogen", "sulfanyl")
         shift = book.rule("anomeric-shift", group.key) if anomeric else None
         value = own.value_kcal + ((shift.value_kcal or 0.0) if shift else 0.0)
-        for distance, rule in ((2, "cation-3"), (3, "cation-4")):
+        for distance, name in ((2, "cation-3"), (3, "cation-4")):
             if any(place.symbols[d] in ("NH+", "NR+") for d in {distance, 6 - distance}):
-                shifted_by = book.rule(rule, group.key)
+                shifted_by = book.rule(name, group.key)
                 value += shifted_by.value_kcal or 0.0
                 terms = (*terms, *shifted_by.terms)
         if group.kind in ("sulfinyl", "sulfonyl"):
