@@ -11,6 +11,7 @@ from ringstrain.errors import MissingValue
 from ringstrain.ledger import regime_of
 from ringstrain.provenance import combined_sigma
 from ringstrain.pyranose import chair_form, pyranose_order
+from ringstrain.remarks import remarks
 from ringstrain.results import SCHEMA, Analysis, Detail, State, SystemResult
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
@@ -98,7 +99,7 @@ def analyze(
         structure=molecule,
         conditions=conditions,
         ring_systems=results,
-        notes=(*molecule.notes, *notes, *_remarks(molecule, results)),
+        notes=(*molecule.notes, *notes, *remarks(molecule, results, book)),
         tables_revision=prices.revision,
     )
 
@@ -338,43 +339,3 @@ def _refuse_unknown(results: Sequence[SystemResult]) -> None:
             for line in state.lines:
                 if line.value_kcal is None:
                     raise MissingValue(f"{line.rule} price", line.groups, atoms=line.atoms[0])
-
-
-def _remarks(structure: Structure, results: Sequence[SystemResult]) -> tuple[str, ...]:
-    """Notes that follow from what was found."""
-    notes = []
-    if any(result.system.large for result in results):
-        notes.append("A ring of eight or more members is fused on; its own conformers are not counted.")
-    side = open_side_centres(structure, {a for result in results for a in result.system.atoms})
-    if side:
-        numbers = ", ".join(str(i + 1) for i in side)
-        notes.append(
-            f"Configuration at atom {numbers} (outside the six-rings) not given; it does not enter the answer."
-        )
-    return tuple(notes)
-
-
-def open_side_centres(structure: Structure, inside: set[int]) -> tuple[int, ...]:
-    """Stereocentres outside the six-membered rings whose configuration is not given, judged by constitution."""
-    return tuple(
-        i
-        for i in structure.fragment
-        if i not in inside and structure.configurations[i] is None and _looks_stereogenic(structure, i)
-    )
-
-
-def _looks_stereogenic(structure: Structure, atom: int) -> bool:
-    """True for a side-chain carbon with four different neighbours, judged by constitution."""
-    record = structure.atoms[atom]
-    around = structure.neighbours[atom]
-    if record.number != 6 or record.aromatic or len(around) + record.hydrogens != 4 or record.hydrogens > 1:
-        return False
-    ends = [
-        (structure.atoms[n].number, structure.atoms[n].hydrogens) for n in around if len(structure.neighbours[n]) == 1
-    ]
-    if len(set(ends)) < len(ends):
-        return False
-    from ringstrain.substituents import branch_code
-
-    codes = {branch_code(structure, int(n), atom, frozenset((atom,)), stereo=False)[0] for n in around}
-    return len(codes) == len(around)

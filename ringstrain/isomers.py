@@ -10,7 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 
-from ringstrain.analysis import group_map, open_side_centres
+from ringstrain.analysis import group_map
 from ringstrain.billing import axial_sites
 from ringstrain.closing import close_chairs
 from ringstrain.compounds import Entry, Priced, Skeleton, gather_entries
@@ -26,6 +26,7 @@ from ringstrain.equilibrium import Variables, blended, difference_sigma, mixture
 from ringstrain.errors import OutOfScope, UsageError
 from ringstrain.ledger import regime_of
 from ringstrain.ranking import Impossible, Isomer, Ranking
+from ringstrain.remarks import open_side_centres
 from ringstrain.ringgraph import RingSystem, find_ring_systems
 from ringstrain.shaping import find_states
 from ringstrain.stereo import Resolved

@@ -11,6 +11,7 @@ References
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 from ringstrain.bill import Bill, Parties
@@ -133,7 +134,7 @@ def sugar_ledger(state: Shapes, facts: Survey, parties: Parties, sugar: Sugar) -
     return bill.settle()
 
 
-_Positions = dict[int, tuple[int, str]]
+_Positions = Mapping[int, tuple[int, str]]
 
 
 def _charge_axial(
@@ -242,6 +243,18 @@ def pyranose_order(geometry: Geometry) -> tuple[int, ...] | None:
     if ends == (True, False):
         return (*forward, atoms[oxygens[0]])
     return (*forward[::-1], atoms[oxygens[0]]) if ends == (False, True) else None
+
+
+def cyclitol_like(geometry: Geometry) -> bool:
+    """True for a lone carbocycle with an oxygen on three or more of its carbons, whatever its other groups."""
+    system, structure = geometry.system, geometry.structure
+    if len(system.rings) != 1 or system.rings[0].kind != "chair":
+        return False
+    atoms = system.rings[0].atoms
+    return (
+        all(structure.atoms[a].number == 6 for a in atoms)
+        and sum(8 in _hetero_on(geometry, a) for a in atoms) >= _CYCLITOL_OXYGENS
+    )
 
 
 def _hetero_on(geometry: Geometry, atom: int) -> set[int]:

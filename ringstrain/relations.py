@@ -89,10 +89,9 @@ def find_relations(tables: Tables) -> Relations:
             factors[number, column] = {"axial": 1.0, "isoclinal": 1 / 3, "equatorial": 0.0}[placed.position]
             axial[number, column] = placed.position == "axial"
         for contact in facts.contacts:
-            ends = [column_of.get(a) for a in (contact.atoms[0], contact.atoms[-1])]
-            if ends[0] is None or ends[1] is None:
+            first, second = column_of.get(contact.atoms[0]), column_of.get(contact.atoms[-1])
+            if first is None or second is None:
                 continue
-            first, second = ends
             if contact.kind == "gauche":
                 both = not axial[number, first] and not axial[number, second]
                 meetings.append(Meeting(number, "gauche, both equatorial" if both else "gauche", first, second))

@@ -85,7 +85,9 @@ def find_states(resolved: Resolved, groups: GroupMap, book: PriceBook) -> list[P
     return _with_twists(chairs, options, strained, parties)
 
 
-def _price_sugar(options: list[tuple[Geometry, tuple[int, ...], Blocks]], parties: Parties, sugar: Sugar) -> list[Priced]:
+def _price_sugar(
+    options: list[tuple[Geometry, tuple[int, ...], Blocks]], parties: Parties, sugar: Sugar
+) -> list[Priced]:
     """Chairs of a pyranose or cyclitol in water, by the closed set."""
     priced = []
     for option, inverted, blocks in options:

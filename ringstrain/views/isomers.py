@@ -107,8 +107,8 @@ def ranking_view(ranking: Ranking, look: Look, most: int) -> Iterator[Renderable
         "Free energies above the best, \N{PLUS-MINUS SIGN} 95 %; faces (a, b) relative to the first centre of each "
         "ring; atoms from 1."
     )
-    for isomer in ranking.impossible[:8]:
-        yield look.text(f"Cannot exist: {isomer.smiles}. {isomer.reason}")
+    for refused in ranking.impossible[:8]:
+        yield look.text(f"Cannot exist: {refused.smiles}. {refused.reason}")
     if len(ranking.impossible) > 8:
         yield look.text(f"... and {len(ranking.impossible) - 8} more that cannot exist; --json lists all.")
     for note in ranking.notes:
