@@ -23,6 +23,8 @@ EXAMPLES = CHECKOUT / "examples"
 DOCUMENTS = (README, EXAMPLES / "README.md")
 WIDTH = 100
 _FENCE = re.compile(r"^```(\w*)\n(.*?)^```$", re.MULTILINE | re.DOTALL)
+#: What is printed when something is broken; never written into a document.
+_OUR_BUG = "Something went wrong inside ringstrain"
 _STYLE = re.compile(r"\x1b\[[0-9;]*[A-Za-z]")
 
 
@@ -121,7 +123,9 @@ def play(command: str, folder: Path) -> str:
     shown = b"".join(_chunks(ours))
     os.close(ours)
     process.wait(timeout=60)
-    return tidy(_STYLE.sub("", shown.decode("utf-8").replace("\r\n", "\n")))
+    text = _STYLE.sub("", shown.decode("utf-8").replace("\r\n", "\n"))
+    # Progress goes back to the start of its line and is written over.
+    return tidy("\n".join(line.rpartition("\r")[2] for line in text.split("\n")))
 
 
 def _chunks(terminal: int) -> Iterator[bytes]:
@@ -154,7 +158,8 @@ def refreshed(text: str, folder: Path) -> str:
         parts = []
         for dialogue in dialogues(block):
             shown = play(dialogue.command, folder)
-            output = dialogue.output if agrees(dialogue.output, shown) else shown
+            stale = not agrees(dialogue.output, shown) and _OUR_BUG not in shown
+            output = shown if stale else dialogue.output
             parts.append(f"$ {dialogue.command}\n{output}")
         text = text[: block.span[0]] + "".join(parts) + text[block.span[1] :]
     return text

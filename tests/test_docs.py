@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import doctest
+import json
 import re
 import sys
 from collections.abc import Iterator
@@ -134,6 +135,34 @@ def test_the_readme_starts_with_the_job_and_two_set_up_commands() -> None:
     assert all(line.startswith("python3 -m venv .venv && .venv/bin/pip install ") for line in setup)
     assert ".venv/bin/ringstrain chairs" in setup[0]
     assert setup[1].endswith(".venv/bin/pytest")
+
+
+def kinds_of_documents() -> list[Any]:
+    """Kind, command and fields of each row of the JSON table."""
+    rows = re.findall(r"^\| `([a-z-]+)` \| `(ringstrain [^`]+)` \| (.*) \|$", read(README), re.MULTILINE)
+    return [pytest.param(kind, command, set(re.findall(r"`(\w+)`", cell)), id=kind) for kind, command, cell in rows]
+
+
+def keys(value: Any) -> set[str]:
+    """Keys of a JSON value at any depth."""
+    if isinstance(value, dict):
+        return set(value).union(*map(keys, value.values()))
+    return set().union(*map(keys, value)) if isinstance(value, list) else set()
+
+
+@pytest.mark.parametrize(("kind", "command", "fields"), kinds_of_documents())
+def test_json_documents_have_the_fields_the_readme_lists(
+    kind: str, command: str, fields: set[str], folder: Path
+) -> None:
+    document = json.loads(play(f"{command} --json", folder).splitlines()[0])
+    assert document["schema"] == "ringstrain/1"
+    assert document["kind"] == kind
+    assert fields <= keys(document)
+
+
+def test_every_command_that_writes_json_has_its_row() -> None:
+    commands = {parameter.values[1].split()[1] for parameter in kinds_of_documents()}
+    assert {name for name in command_names() if "--json" in options(name)} <= commands
 
 
 def test_every_exit_code_is_listed() -> None:
