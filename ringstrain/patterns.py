@@ -14,7 +14,8 @@ from ringstrain.analysis import SCHEMA
 from ringstrain.errors import UsageError
 from ringstrain.palette import PaletteGroup, find_group, locate
 from ringstrain.placing import choose_multisets, make_scaffold, place_groups
-from ringstrain.screening import Screen, Screener
+from ringstrain.screen import Screen
+from ringstrain.screening import Screener
 from ringstrain.sieve import Sieve, Wish
 from ringstrain.structure.graft import configure
 from ringstrain.structure.records import Structure

@@ -20,6 +20,7 @@ from ringstrain.matrices import Matrices
 from ringstrain.palette import PaletteGroup, set_groups
 from ringstrain.placing import Scaffold
 from ringstrain.relations import CHAIRS, SHAPES, Relations, find_relations
+from ringstrain.screen import Screen, Weighed
 from ringstrain.shaping import STRAINED
 from ringstrain.structure.records import Structure
 from ringstrain.tables.conditions import Conditions
@@ -34,77 +35,6 @@ if TYPE_CHECKING:
     Flags = NDArray[np.bool_]
 
 _CYCLITOL_OXYGENS = 3
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Screen:
-    """What is known of a block of patterns; all arrays have one row for each.
-
-    Attributes
-    ----------
-    rows
-        Group numbers by slot.
-    energy_kcal
-        Free energy of all states together [kcal/mol]; NaN when an unpriced contact decides.
-    dg_kcal
-        Favoured ring form against the next [kcal/mol]; NaN when undetermined or when there is one form only.
-    form_share
-        Population of the commonest ring shape [-].
-    axial_share, equatorial_share
-        Population in which the group of each slot is axial or equatorial, ``(patterns, slots)`` [-].
-    favoured_axial, favoured_equatorial
-        The same for the lowest state alone.
-    placements
-        Labelled placements the pattern stands for [-].
-    """
-
-    rows: NDArray[np.int16]
-    energy_kcal: Floats
-    dg_kcal: Floats
-    form_share: Floats
-    axial_share: Floats
-    equatorial_share: Floats
-    favoured_axial: Flags
-    favoured_equatorial: Flags
-    placements: NDArray[np.int64]
-
-    def take(self, chosen: NDArray[np.intp] | Flags) -> Screen:
-        """Some of the patterns."""
-        return Screen(**{name: getattr(self, name)[chosen] for name in self.__slots__})
-
-    def put(self, chosen: NDArray[np.intp], part: Screen) -> None:
-        """Write some of the patterns back."""
-        for name in self.__slots__:
-            getattr(self, name)[chosen] = getattr(part, name)
-
-    @classmethod
-    def join(cls, parts: list[Screen]) -> Screen:
-        """Blocks one after the other."""
-        return cls(**{name: np.concatenate([getattr(part, name) for part in parts]) for name in cls.__slots__})
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Weighed:
-    """One pattern weighed by a full analysis.
-
-    Attributes
-    ----------
-    energy_kcal
-        Free energy of all states [kcal/mol]; None when an unpriced contact decides.
-    form_share
-        Population of the commonest ring shape [-].
-    axial_share, equatorial_share
-        By slot [-].
-    axial, equatorial
-        Slots of the lowest state.
-    """
-
-    energy_kcal: float | None
-    form_share: float | None
-    axial_share: dict[int, float]
-    equatorial_share: dict[int, float]
-    axial: frozenset[int]
-    equatorial: frozenset[int]
 
 
 @dataclass(kw_only=True)
@@ -222,7 +152,7 @@ class Screener:
         edge = np.zeros(len(rows), dtype=bool)
         for chosen in self._by_name(rows):
             block = rows[chosen]
-            contents, numbers = self._contents(block)
+            contents, numbers = self.contents(block)
             priced = self.matrices.tables(block[0], contents, twisting=False)
             strain = np.zeros((len(block), CHAIRS))
             marks = np.zeros((len(block), SHAPES, sides), dtype=np.uint64)
@@ -271,7 +201,7 @@ class Screener:
         order = np.argsort(inverse, kind="stable")
         return np.split(order, np.flatnonzero(np.diff(inverse[order])) + 1)
 
-    def _contents(self, rows: NDArray[np.int16]) -> tuple[list[tuple[int, int]], list[NDArray[np.intp]]]:
+    def contents(self, rows: NDArray[np.int16]) -> tuple[list[tuple[int, int]], list[NDArray[np.intp]]]:
         """Pairs of upper and lower group that occur, and the number of the pair on each place for each side of the
         nitrogens, ``(6, patterns)``.
         """

@@ -12,7 +12,7 @@ import numpy as np
 from ringstrain.errors import UsageError
 from ringstrain.palette import PaletteGroup, find_group
 from ringstrain.placing import Scaffold
-from ringstrain.screening import Screen
+from ringstrain.screen import Screen
 from ringstrain.tables.records import Tables
 
 if TYPE_CHECKING:
