@@ -6,18 +6,23 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from rdkit.Chem import BondType, CanonicalRankAtoms
+from rdkit.Chem import BondType, CanonicalRankAtoms, GetDistanceMatrix, HybridizationType
 
 from ringstrain.crosscheck.molecule import Molecule, Points
+
+#: Bonds this far from a six-membered ring are turned, and so many at most [-].
+_NEAR = 2
+_MOST = 16
 
 
 @dataclass(frozen=True, slots=True)
 class Rotor:
-    """A bond about which one side turns: its atoms, and the atoms that move."""
+    """A bond about which one side turns: its atoms, the atoms that move, and the turns worth trying [degree]."""
 
     fixed: int
     moving: int
     side: tuple[int, ...]
+    turns: tuple[float, ...]
 
     def turned(self, points: Points, degrees: float) -> Points:
         """Coordinates with the side turned by an angle [degree]."""
@@ -34,7 +39,7 @@ class Rotor:
 
 
 def find_rotors(molecule: Molecule) -> tuple[Rotor, ...]:
-    """Acyclic single bonds whose turning makes another rotamer; methyl and its like are left out.
+    """Acyclic single bonds near the rings whose turning makes another rotamer; methyl and its like are left out.
 
     Parameters
     ----------
@@ -43,7 +48,9 @@ def find_rotors(molecule: Molecule) -> tuple[Rotor, ...]:
     """
     mol = molecule.mol
     ranks = list(CanonicalRankAtoms(mol, breakTies=False, includeChirality=False))
-    found = []
+    distances = GetDistanceMatrix(mol)
+    ring_atoms = [atom.GetIdx() for atom in mol.GetAtoms() if atom.IsInRingSize(6)]
+    found: list[tuple[float, Rotor]] = []
     for bond in mol.GetBonds():
         if bond.GetBondType() != BondType.SINGLE or bond.IsInRing():
             continue
@@ -52,15 +59,21 @@ def find_rotors(molecule: Molecule) -> tuple[Rotor, ...]:
             continue
         sides = _beyond(mol, a, b), _beyond(mol, b, a)
         fixed, moving, side = (a, b, sides[0]) if len(sides[0]) <= len(sides[1]) else (b, a, sides[1])
-        found.append(Rotor(fixed, moving, tuple(sorted(side))))
-    return tuple(found)
+        away = min(distances[end][atom] for end in (a, b) for atom in ring_atoms)
+        if away <= _NEAR:
+            planar = any(mol.GetAtomWithIdx(end).GetHybridization() == HybridizationType.SP2 for end in (a, b))
+            turns = (180.0, 90.0, -90.0) if planar else (120.0, -120.0)
+            found.append((away, Rotor(fixed, moving, tuple(sorted(side)), turns)))
+    return tuple(rotor for _, rotor in sorted(found, key=lambda item: item[0])[:_MOST])
 
 
 def _is_plain(mol: Any, end: int, other: int, ranks: list[int]) -> bool:
     """True when turning this end changes nothing: no neighbours, one in line, or three alike."""
     around = [n.GetIdx() for n in mol.GetAtomWithIdx(end).GetNeighbors() if n.GetIdx() != other]
-    linear = len(around) == 1 and mol.GetAtomWithIdx(end).GetTotalDegree() == 2 and any(
-        bond.GetBondType() == BondType.TRIPLE for bond in mol.GetAtomWithIdx(end).GetBonds()
+    linear = (
+        len(around) == 1
+        and mol.GetAtomWithIdx(end).GetTotalDegree() == 2
+        and any(bond.GetBondType() == BondType.TRIPLE for bond in mol.GetAtomWithIdx(end).GetBonds())
     )
     return not around or linear or (len(around) == 3 and len({ranks[n] for n in around}) == 1)
 

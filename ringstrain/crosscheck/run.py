@@ -151,8 +151,7 @@ def _merged(strangers: dict[tuple[object, ...], list[Minimum]]) -> list[list[Min
             (
                 other
                 for other in merged
-                if abs(other[0].energy_kcal - own[0].energy_kcal) < SAME_KCAL
-                and _names(other[0]) == names
+                if abs(other[0].energy_kcal - own[0].energy_kcal) < SAME_KCAL and _names(other[0]) == names
             ),
             None,
         )

@@ -23,9 +23,10 @@ _FEWEST, _MOST = 16, 80
 _BUILDS = 3
 #: Two minima of one form closer than this are one [kcal/mol].
 SAME_KCAL = 0.02
-#: Minima of each form that a slow method gets [-]; forms beyond the ledger only when this low [kcal/mol].
+#: Minima of each form that a slow method gets [-], and how high those of other shapes and of chairs may lie [kcal/mol].
 _BEST = 2
-_LOW_KCAL = 5.0
+_LOW_KCAL = 6.0
+_HIGH_KCAL = 40.0
 #: Rounds over all side chains at most [-].
 _PASSES = 3
 
@@ -48,6 +49,11 @@ class Minimum:
     energy_kcal: float
     points: Points
     forms: tuple[Form, ...]
+
+    @property
+    def is_of_chairs(self) -> bool:
+        """True when the ledger knows it and every ring is a chair or half-chair."""
+        return all(form.state and set(form.shapes) <= {"chair", "half-chair"} for form in self.forms)
 
 
 @dataclass(frozen=True, slots=True)
@@ -118,8 +124,8 @@ def search(
             tried, rejected = tried + 1, rejected - 1
             pool.extend(_minimum(analysis, molecule, field, points))
     fates: dict[tuple[int, str], Form] = {}
-    for system, state in _unseen(analysis, pool):
-        for minimum in _built(analysis, molecule, field, pool, system, state):
+    for system, state, fresh in _wanted(analysis, pool):
+        for minimum in _built(analysis, molecule, field, pool, system, state, fresh=fresh):
             if not go(total, total):
                 complete = False
                 break
@@ -145,13 +151,19 @@ def _minimum(analysis: Analysis, molecule: Molecule, method: Method, points: Poi
         yield Minimum(energy, relaxed, forms)
 
 
-def _unseen(analysis: Analysis, pool: Sequence[Minimum]) -> Iterator[tuple[int, State]]:
-    """States that no minimum shows, and of which no symmetry copy is shown either."""
+def _wanted(analysis: Analysis, pool: Sequence[Minimum]) -> Iterator[tuple[int, State, bool]]:
+    """Every state but symmetry copies, so that the best side chains of one are tried in all.
+
+    True stands beside those that no minimum shows while the other ring systems are at their best.
+    """
+    best = min(pool, key=lambda m: m.energy_kcal, default=None)
+    others = list(_key(analysis, best)) if best is not None else [""] * len(analysis.ring_systems)
+    shown = {_key(analysis, minimum) for minimum in pool}
     for number, result in enumerate(analysis.ring_systems):
-        shown = {original(result, minimum.forms[number].state) for minimum in pool}
         for state in result.states:
-            if state.equivalent_to is None and state.id not in shown:
-                yield number, state
+            wanted = (*others[:number], state.id, *others[number + 1 :])
+            if state.equivalent_to is None:
+                yield number, state, wanted not in shown
 
 
 def original(result: SystemResult, id: str) -> str:
@@ -160,11 +172,22 @@ def original(result: SystemResult, id: str) -> str:
 
 
 def _built(
-    analysis: Analysis, molecule: Molecule, field: Mmff, pool: Sequence[Minimum], system: int, state: State
+    analysis: Analysis,
+    molecule: Molecule,
+    field: Mmff,
+    pool: Sequence[Minimum],
+    system: int,
+    state: State,
+    *,
+    fresh: bool,
 ) -> Iterator[Minimum]:
-    """Minima downhill of a state that was built by holding its rings."""
-    starts = [minimum.points for minimum in sorted(pool, key=lambda m: m.energy_kcal)[:1]]
-    starts.extend(embed(molecule, seed=104729 + 31 * system, count=2 * _BUILDS))
+    """Minima downhill of a state that was built by holding its rings, from the best minimum and fresh conformers."""
+    best = min(pool, key=lambda m: m.energy_kcal, default=None)
+    if not fresh and best is not None and original(analysis.ring_systems[system], best.forms[system].state) == state.id:
+        return
+    starts = [best.points] if best is not None else []
+    if fresh:
+        starts.extend(embed(molecule, seed=104729 + 31 * system, count=2 * _BUILDS))
     result = analysis.ring_systems[system]
     rings = [[molecule.places[a] for a in ring] for ring in result.rings]
     wanted = [ring.torsions for ring in state.detail.shapes.rings]
@@ -179,9 +202,7 @@ def _built(
             return
 
 
-def _settle(
-    analysis: Analysis, molecule: Molecule, field: Mmff, pool: list[Minimum], going: Callable[[], bool]
-) -> int:
+def _settle(analysis: Analysis, molecule: Molecule, field: Mmff, pool: list[Minimum], going: Callable[[], bool]) -> int:
     """Turn the side chains of the best minimum of each form, one at a time, as long as that leads down.
 
     What is found joins the pool; the number of minimisations comes back.
@@ -199,7 +220,7 @@ def _settle(
         for _ in range(_PASSES):
             before = current.energy_kcal
             for rotor in rotors:
-                for degrees in (120.0, -120.0):
+                for degrees in rotor.turns:
                     if not going():
                         return tried
                     tried += 1
@@ -241,8 +262,7 @@ def _refined(
     counts: dict[tuple[object, ...], int] = {}
     found: list[Minimum] = []
     for minimum in minima:
-        strange = any(not form.state for form in minimum.forms)
-        if strange and minimum.energy_kcal > minima[0].energy_kcal + _LOW_KCAL:
+        if minimum.energy_kcal > minima[0].energy_kcal + (_HIGH_KCAL if minimum.is_of_chairs else _LOW_KCAL):
             continue
         key = _key(analysis, minimum)
         counts[key] = counts.get(key, 0) + 1
