@@ -174,9 +174,7 @@ def misses_of(scores: Iterable[Score], tables: Tables) -> tuple[Miss, ...]:
             continue
         regime = score.prediction.regime
         bare = math.sqrt(max(0.0, sigma**2 - tables.model_terms.get(regime, 0.0) ** 2))
-        found.append(
-            Miss(id=score.row.id, regime=regime, source=score.row.source, gap_kcal=gap, sigma_kcal=bare)
-        )
+        found.append(Miss(id=score.row.id, regime=regime, source=score.row.source, gap_kcal=gap, sigma_kcal=bare))
     return tuple(found)
 
 
