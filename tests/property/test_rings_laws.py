@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import math
 from collections import Counter
 from random import Random
@@ -9,9 +10,10 @@ from typing import Any
 
 import pytest
 import ringstrain as rs
-from hypothesis import assume, given
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 from rdkit import Chem
+from rdkit.rdBase import BlockLogs
 from ringstrain.analysis import State, SystemResult
 from ringstrain.errors import OutOfScope
 
@@ -194,3 +196,44 @@ def test_a_carbon_13_changes_no_side_and_no_energy(mol: Any, rng: Random) -> Non
     labelled = Chem.MolToSmiles(heavy, canonical=False)
     plain = [(s.axial, round(s.energy_kcal, 6)) for x in systems(text) for s in x.states]
     assert Counter(plain) == Counter((s.axial, round(s.energy_kcal, 6)) for x in systems(labelled) for s in x.states)
+
+
+GROUPS = (
+    *("", "C", "C(C)(C)C", "O", "OC", "OC(C)=O", "F", "Cl", "N", "N(C)C", "[NH3+]", "C#N", "C(=O)[O-]", "[N+](=O)[O-]"),
+    *("SC", "S(C)(=O)=O", "[Si](C)(C)C", "c8ccccc8", "C(F)(F)F", "NC(C)=O", "P(C)C", "[Hg]Cl", "C8CC8", "OC8CCCCO8"),
+)
+MEMBERS = (
+    *("C", "C", "C", "C", "C", "C", "C", "C", "C=", "O", "N", "S", "P", "[NH2+]", "[SiH2]"),
+    *("N(C)", "N(C(C)=O)", "S(=O)", "S(=O)(=O)", "[N+](C)(C)", "[S+](C)", "[Se]", "C(=O)", "C(=C)"),
+)
+
+
+@st.composite
+def odd_rings(draw: st.DrawFn) -> str:
+    """SMILES of a six-membered ring of any members and groups, sensible or not."""
+    text = ""
+    for place in range(6):
+        member = draw(st.sampled_from(MEMBERS if place < 5 else MEMBERS[:8]))
+        bond = "=" if member == "C=" else ""
+        member = member.removesuffix("=")
+        cut = member.index("]") + 1 if "[" in member else 1
+        head, tail = member[:cut], member[cut:]
+        closure = "1" if place in (0, 5) else ""
+        group = draw(st.sampled_from(GROUPS)) if member == "C" and not bond else ""
+        text += head + closure + tail + (f"({group})" if group else "") + bond
+    return text
+
+
+@given(odd_rings(), seeds, st.sampled_from(MEDIA))
+@settings(max_examples=150)
+def test_nothing_but_errors_of_the_package_comes_out(smiles: str, rng: Random, medium: str) -> None:
+    with BlockLogs():
+        assume(Chem.MolFromSmiles(smiles) is not None)
+    text, _ = rewritten(with_random_marks(smiles, rng), rng)
+    problem, answer = "", None
+    try:
+        answer = rs.analyze(text, medium=medium).as_dict()
+    except rs.RingstrainError as error:
+        problem = str(error)
+    json.dumps(answer, allow_nan=False)
+    assert answer is not None or problem.endswith(".")
