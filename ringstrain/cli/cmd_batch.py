@@ -198,13 +198,14 @@ def _skip(records: Iterator[BatchRecord], kept: Kept, output: str, settings: Set
 @contextmanager
 def _engage(workers: int, scheduler: str | None) -> Iterator[tuple[Crew, int, int]]:
     """Who works, how many records they take at once, and how many such chunks are under way."""
-    from ringstrain.crew import Crew, Inline, open_pool
+    from ringstrain.crew import Crew, Inline, collecting_rarely, open_pool
 
     if scheduler is not None:
         with closing(_open_cluster(scheduler)) as client:
             yield Crew(client.get_executor(pure=False)), _CHUNK, 4 * max(1, sum(client.nthreads().values()))
     elif workers == 1:
-        yield Crew(Inline()), 1, 1
+        with collecting_rarely():
+            yield Crew(Inline()), 1, 1
     else:
         reopen: Callable[[], Executor] = partial(open_pool, workers)
         yield Crew(reopen(), reopen), _CHUNK, 3 * workers

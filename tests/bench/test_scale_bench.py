@@ -6,11 +6,13 @@ Run with ``pytest -m bench tests/bench/test_scale_bench.py -s``.  Limits are tho
 from __future__ import annotations
 
 import os
+import resource
 import statistics
 import subprocess
 import sys
 import time
 from collections.abc import Callable
+from itertools import islice
 from pathlib import Path
 from random import Random
 from typing import Any
@@ -32,6 +34,11 @@ from zoo import marked, rewritten, zoo
 pytestmark = pytest.mark.bench
 GROUPS = ("Me", "OH", "F", "tBu", "Cl", "Ph")
 PATTERNS = 1_000_000
+#: What else stands in a file from a catalogue: no six-membered ring, or an aromatic one only.
+OTHERS = (
+    *("CC(=O)Oc1ccccc1C(=O)O", "Cn1cnc2c1c(=O)n(C)c(=O)n2C", "CCCCCCCCO", "CC(C)Cc1ccc(cc1)C(C)C(=O)O", "C1CCCC1"),
+    *("OCC(O)CO", "c1ccc2ccccc2c1", "CC(=O)Nc1ccc(O)cc1", "N[C@@H](C)C(=O)O", "O=C1CCCO1"),
+)
 CONFORMERS = 10
 #: Twenty molecules of the kind people ask about: simple rings, decalins, terpenes, sugars, hetero rings, a steroid.
 TWENTY = (
@@ -117,33 +124,36 @@ def test_kernel_against_a_bare_gather_and_sum(million: Any, benchmark: Any) -> N
 
 
 def mixed_smiles(count: int, seed: int) -> list[str]:
-    """Random writings of a mixed set of compounds, so that no cache on a text helps."""
+    """Random writings of twenty familiar rings, ten molecules without one and ten crowded rings, by turns."""
     rng = Random(seed)
-    mols = [marked(smiles) for smiles in (*TWENTY, *(smiles for _, smiles in zoo()))]
+    mols = [marked(smiles) for smiles in (*TWENTY, *OTHERS, *(smiles for _, smiles in islice(zoo(), 10)))]
     return [rewritten(mols[number % len(mols)], rng)[0] for number in range(count)]
 
 
-def run_batch(source: Path, target: Path, workers: int) -> float:
-    """Time of a whole batch process [s]."""
+def run_batch(source: Path, target: Path, workers: int) -> tuple[float, float]:
+    """Time and processor time of a whole batch process [s]."""
     code = "from ringstrain.cli import main; main()"
     command = [sys.executable, "-c", code, "batch", str(source), "-o", str(target), "-q", "--workers", str(workers)]
-    start = time.perf_counter()
+    before, start = resource.getrusage(resource.RUSAGE_CHILDREN), time.perf_counter()
     subprocess.run(command, check=True, capture_output=True)
-    return time.perf_counter() - start
+    wall, after = time.perf_counter() - start, resource.getrusage(resource.RUSAGE_CHILDREN)
+    return wall, after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime
 
 
 def test_batch_on_one_worker_against_reading_and_writing_with_RDKit(tmp_path: Path, benchmark: Any) -> None:
-    texts = mixed_smiles(10_000, seed=1)
+    """In processor time, so that what else the machine does counts for neither side."""
     source = tmp_path / "in.smi"
-    source.write_text("\n".join(texts) + "\n", encoding="utf-8", newline="")
+    source.write_text("\n".join(mixed_smiles(10_000, seed=1)) + "\n", encoding="utf-8", newline="")
 
-    def outside() -> None:
+    def outside() -> float:
+        start = time.process_time()
         with open(source, encoding="utf-8") as stream, open(tmp_path / "out.smi", "w", encoding="utf-8") as out:
             for line in stream:
                 out.write(Chem.MolToSmiles(Chem.MolFromSmiles(line.strip())) + "\n")
+        return time.process_time() - start
 
-    ours = run_batch(source, tmp_path / "out.csv", 1)
-    theirs = best_of(outside, 3)
+    _, ours = run_batch(source, tmp_path / "out.csv", 1)
+    theirs = min(outside() for _ in range(3))
     print(f"batch: {ours:.1f} s, RDKit {theirs:.2f} s, {ours / theirs:.1f} times")
     benchmark.extra_info["ratio"] = ours / theirs
     benchmark.pedantic(outside, rounds=1)
@@ -154,8 +164,8 @@ def test_batch_on_one_worker_against_reading_and_writing_with_RDKit(tmp_path: Pa
 def test_two_workers_against_one(tmp_path: Path, benchmark: Any) -> None:
     source = tmp_path / "in.smi"
     source.write_text("\n".join(mixed_smiles(20_000, seed=2)) + "\n", encoding="utf-8", newline="")
-    one = run_batch(source, tmp_path / "one.csv", 1)
-    two = run_batch(source, tmp_path / "two.csv", 2)
+    one, _ = run_batch(source, tmp_path / "one.csv", 1)
+    two, _ = run_batch(source, tmp_path / "two.csv", 2)
     print(f"batch: {one:.1f} s on one worker, {two:.1f} s on two, {one / two:.2f} times")
     assert (tmp_path / "one.csv").read_bytes() == (tmp_path / "two.csv").read_bytes()
     benchmark.extra_info["gain"] = one / two
