@@ -21,7 +21,8 @@ if TYPE_CHECKING:
     from ringstrain.batch import Failure, analyze_many
     from ringstrain.errors import InputError, MissingValue, OutOfScope, RingstrainError, TableError
     from ringstrain.isomers import rank_isomers
-    from ringstrain.patterns import Pattern, enumerate_patterns
+    from ringstrain.pattern_records import Pattern
+    from ringstrain.patterns import enumerate_patterns
     from ringstrain.ranking import Isomer, Ranking
     from ringstrain.sieve import Wish
     from ringstrain.structure import Structure
@@ -39,7 +40,7 @@ _HOMES = {
     "OutOfScope": "ringstrain.errors",
     "RingstrainError": "ringstrain.errors",
     "TableError": "ringstrain.errors",
-    "Pattern": "ringstrain.patterns",
+    "Pattern": "ringstrain.pattern_records",
     "enumerate_patterns": "ringstrain.patterns",
     "Wish": "ringstrain.sieve",
     "Isomer": "ringstrain.ranking",

@@ -13,6 +13,12 @@ if TYPE_CHECKING:
     Integers = NDArray[Any]
 
 
+def _any_state(flags: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """Which rows have a flag set."""
+    found: NDArray[np.bool_] = np.logical_or.reduce(flags, axis=1)
+    return found
+
+
 def _codes(rows: Integers, permutations: Integers, base: int) -> Integers:
     """Number of every image of every row, ``(rows, operations)``: slot i of a row moves to slot permutation[i]."""
     powers = np.array([base**i for i in range(rows.shape[1])], dtype=np.int64)
@@ -83,8 +89,7 @@ def keep_first_images(
         permutations, signs = permutations[signs > 0], signs[signs > 0]
     codes, exists = image_codes(rows, permutations, signs, mirrors)
     beaten = (codes < codes[:, :1]) & exists
-    kept: NDArray[np.bool_] = ~beaten.any(axis=1)
-    return kept
+    return ~_any_state(beaten)
 
 
 def sum_prices(contents: Integers, pairs: Integers, tables: Floats) -> Floats:
@@ -106,7 +111,7 @@ def sum_prices(contents: Integers, pairs: Integers, tables: Floats) -> Floats:
     """
     size = round(tables.shape[1] ** 0.5)
     scaled = contents * size
-    total = np.take(tables[0], scaled[pairs[0, 0]] + contents[pairs[0, 1]], axis=0)
+    total: Floats = np.take(tables[0], scaled[pairs[0, 0]] + contents[pairs[0, 1]], axis=0)
     for (first, second), table in zip(pairs[1:], tables[1:], strict=True):
         total += np.take(table, scaled[first] + contents[second], axis=0)
     return total
@@ -181,7 +186,7 @@ def two_lowest_sets(
     best = lowest_set(energies, labels, weights)
     favoured = (labels == best[:, None]) & exists
     rest = np.where(favoured, np.inf, energies)
-    alone = ~np.isfinite(rest).any(axis=1)
+    alone = ~_any_state(np.isfinite(rest))
     rest[alone] = 0.0
     second = lowest_set(rest, labels, weights)
     other = (labels == second[:, None]) & exists & ~favoured & ~alone[:, None]

@@ -200,7 +200,7 @@ class Matrices:
         return self.scaffold.system.kinds[atom] == "inverting"
 
     def _pair_prices(self, kind: str) -> tuple[Floats, NDArray[np.uint64], NDArray[np.bool_]]:
-        """Price of every pair of groups in one kind of meeting, the fingerprint of those without one, which are polar."""
+        """Prices of pairs of groups in one kind of meeting, fingerprint of those without one, and which are polar."""
         ask = _QUESTIONS[kind]
         count = len(self.palette) + 2
         values = np.zeros((count, count))

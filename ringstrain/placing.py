@@ -198,7 +198,7 @@ def _marks(structure: Structure) -> dict[int, int]:
 
 
 def _direction(system: RingSystem) -> int:
-    """+1 when the positive faces of the first ring are the upper ones, its lowest atoms running clockwise from above."""
+    """+1 when the positive faces of the first ring are the upper ones, lowest atoms running clockwise from above."""
     ring = system.rings[0].atoms
     place = ring.index(min(ring))
     forward = ring[(place + 1) % 6] < ring[place - 1]
@@ -239,7 +239,7 @@ def _is_hydrogen(structure: Structure, site: Site) -> bool:
 def _slot_images(
     geometry: Geometry, slots: tuple[Slot, ...], groups: object, marked: set[int]
 ) -> tuple[NDArray[np.intp], NDArray[np.int8], NDArray[np.intp]]:
-    """Slot permutations of the symmetry operations that keep the set of marked atoms, with where the first ring lands."""
+    """Slot permutations of the operations that keep the set of marked atoms, and where the first ring lands."""
     system = geometry.system
     rows: dict[tuple[tuple[int, ...], int], tuple[int, ...]] = {}
     for operation in operations(geometry, groups):  # type: ignore[arg-type]

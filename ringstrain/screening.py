@@ -139,8 +139,8 @@ class Screener:
         Returns
         -------
         energies
-            ``(patterns, states)`` [kcal/mol]: eight shapes, each with every side of the ring nitrogens; twist-boats that
-            are not offered are infinite.
+            ``(patterns, states)`` [kcal/mol]: eight shapes, each with every side of the ring nitrogens; twist-boats
+            that are not offered are infinite.
         unknown
             Fingerprint of the unpriced contacts of each state, None when all have a price.
         edge
@@ -237,7 +237,8 @@ class Screener:
         """Labelled placements each pattern stands for."""
         if self.enantiomers:
             mates = mates[:, self.scaffold.signs > 0]
-        return mates.shape[1] // mates.sum(axis=1)
+        orbits: NDArray[np.int64] = mates.shape[1] // mates.sum(axis=1)
+        return orbits
 
     def _labels(self, mates: Flags) -> NDArray[np.intp]:
         """Ring form of each shape: the lowest shape that symmetry makes it equal to, ``(patterns, shapes)``."""

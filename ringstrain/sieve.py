@@ -177,13 +177,15 @@ class Sieve:
         every = place == "equatorial"
         if not comparison.sign:
             stands = screen.favoured_equatorial if every else screen.favoured_axial
-            found: Flags = ~(mine & ~stands).any(axis=1) if every else (mine & stands).any(axis=1)
-            return found & mine.any(axis=1)
+            met: Flags = (~mine | stands).all(axis=1) if every else (mine & stands).any(axis=1)
+            both: Flags = np.logical_and(met, mine.any(axis=1))
+            return both
         if every:
             shares = np.where(mine, screen.equatorial_share, np.inf).min(axis=1)
         else:
             shares = np.where(mine, screen.axial_share, -np.inf).max(axis=1)
-        return comparison.holds(shares) & mine.any(axis=1)
+        kept: Flags = np.logical_and(comparison.holds(shares), mine.any(axis=1))
+        return kept
 
     def _pair(self, text: str, *, same: bool) -> tuple[list[tuple[int, int]], int, int]:
         """Pairs of slots that count as cis or trans, and the group numbers wanted on them (0 for any)."""

@@ -12,7 +12,8 @@ import pytest
 import ringstrain as rs
 from ringstrain.errors import UnknownGroup, UsageError
 from ringstrain.palette import find_group
-from ringstrain.patterns import Pattern, enumerate_patterns, plan_search
+from ringstrain.pattern_records import Pattern
+from ringstrain.patterns import enumerate_patterns, plan_search
 from ringstrain.placing import choose_multisets, make_scaffold, place_groups
 from ringstrain.screening import Screener
 from ringstrain.sieve import Wish, parse_comparison

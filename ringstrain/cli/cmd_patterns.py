@@ -12,7 +12,8 @@ from ringstrain.cli import common
 from ringstrain.errors import UsageError
 
 if TYPE_CHECKING:
-    from ringstrain.patterns import Pattern, Search
+    from ringstrain.pattern_records import Pattern
+    from ringstrain.patterns import Search
 
 HELP = """Every way to place groups on a ring, each once, filtered and ranked.
 

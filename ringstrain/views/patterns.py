@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from ringstrain.patterns import Pattern, Tally
+from ringstrain.pattern_records import Pattern
+from ringstrain.patterns import Tally
 from ringstrain.units import KJ_PER_KCAL, Z95
 from ringstrain.views.as_json import to_line
 from ringstrain.views.look import Look, Units, constant, percent
@@ -19,14 +20,14 @@ def patterns_header(units: Units) -> str:
     """Column names of :func:`pattern_row`."""
     return row(
         (
-            "rank", "pattern", "smiles", "placements", f"energy_{units}", f"dG_{units}", f"uncertainty_{units}", "K", "K_low",
-            "K_high", "bound", "population", "axial_groups", "axial_share",
+            "rank", "pattern", "smiles", "placements", f"energy_{units}", f"dG_{units}", f"uncertainty_{units}", "K",
+            "K_low", "K_high", "bound", "population", "axial_groups", "axial_share",
         )
     )  # fmt: skip
 
 
 def pattern_row(pattern: Pattern, units: Units) -> str:
-    """One pattern as TSV; axial groups are those of the favoured form, axial shares come in the order of the pattern."""
+    """One pattern as TSV; axial groups are those of the favoured form, axial shares come in order of position."""
     factor = KJ_PER_KCAL if units == "kJ" else 1.0
 
     def energy(value: float | None) -> str | None:
