@@ -206,6 +206,7 @@ def _scaled_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
         anomeric = place.has_near("O", "S") and group.kind in ("oxy", "acyloxy", "silyloxy", "halogen", "sulfanyl")
         shift = book.rule("anomeric-shift", group.key) if anomeric else None
         value = own.value_kcal + ((shift.value_kcal or 0.0) if shift else 0.0)
+        terms = (*own.terms, *spread.terms, *(shift.terms if shift else ()))
         for distance, name in ((2, "cation-3"), (3, "cation-4")):
             if any(place.symbols[d] in ("NH+", "NR+") for d in {distance, 6 - distance}):
                 shifted_by = book.rule(name, group.key)
@@ -215,7 +216,6 @@ def _scaled_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
             value += (book.rule("beta-oxygen-shift", group.key).value_kcal or 0.0) * sum(
                 place.symbols[d] == "O" for d in (2, 4)
             )
-        terms = (*own.terms, *spread.terms)
         shifted = " and an anomeric shift" if shift else ""
         note = f"{place.ring}, position {place.position}: cyclohexane A-value{shifted}, wide"
     return Price(
