@@ -13,6 +13,7 @@ from ringstrain.charges import (
     charge_allylic,
     charge_companions,
     charge_eclipsed,
+    charge_flat_fusions,
     charge_geminal,
     charge_shapes,
     charge_transannular,
@@ -76,6 +77,7 @@ def make_ledger(state: Shapes, facts: Survey, parties: Parties, twisting: frozen
             charge_transannular(contact, bill)
     charge_shapes(state, parties, bill)
     charge_companions(state.geometry, parties.book, bill)
+    charge_flat_fusions(state, parties.book, bill)
     charge_allylic(state.geometry, facts, parties, bill)
     charge_across(state, facts, parties, bill)
     return bill.settle()

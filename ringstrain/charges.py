@@ -6,6 +6,7 @@ from ringstrain.bill import Bill, Parties, axial_sites, pair_of, shared_ring
 from ringstrain.contacts import Contact, Survey
 from ringstrain.geometry import Geometry
 from ringstrain.provenance import Price
+from ringstrain.ringgraph import atom_kind
 from ringstrain.states import Shapes
 from ringstrain.tables.prices import PriceBook
 
@@ -71,8 +72,47 @@ def charge_companions(geometry: Geometry, book: PriceBook, bill: Bill) -> None:
     for companion in geometry.system.companions:
         shared = [a for a in companion if a in geometry.system.atom_set]
         if len(companion) == 5 and len(shared) == 2 and _is_trans_fused(geometry, companion, shared[0], shared[1]):
-            price = book.rule("trans-five-ring", "five-ring")
+            flat = _flat_atoms(geometry, [a for a in companion if a not in shared]) > 1
+            price = book.rule("trans-flat-five-ring" if flat else "trans-five-ring", "five-ring")
             bill.charge("trans-fused five-ring", ("five-ring",), tuple(sorted(shared)), price)
+
+
+def _flat_atoms(geometry: Geometry, atoms: list[int]) -> int:
+    """How many of some neighbouring atoms are planar: double bonds, and what conjugates with them."""
+    structure = geometry.structure
+    double = {a for a in atoms if atom_kind(structure, a) == "sp2"}
+    conjugated = {
+        a for a in atoms if structure.atoms[a].number in (7, 8) and double.intersection(structure.neighbours[a])
+    }
+    return len(double | conjugated)
+
+
+def charge_flat_fusions(state: Shapes, book: PriceBook, bill: Bill) -> None:
+    """A chair fused to a half-chair at an sp2 atom, bent there more steeply than an sp2 atom likes.
+
+    Notes
+    -----
+    At the shared bond the ring neighbours of the sp2 atom lie opposite each other and those of the other atom 120
+    degrees apart, so that the chair bends by 60 degrees less or more than the half-chair: less when the signs differ.
+    """
+    system = state.geometry.system
+    if "sp2" not in system.kinds.values():
+        return
+    for number, flat in enumerate(system.rings):
+        if flat.kind != "half-chair":
+            continue
+        for other, chair in enumerate(system.rings):
+            if chair.kind != "chair" or state.rings[other].shape != "chair":
+                continue
+            shared = [a for a in flat.atoms if a in chair.atoms]
+            if len(shared) != 2 or {system.kinds[a] for a in shared} != {"sp2", "sp3"}:
+                continue
+            if state.torsion_between(number, *shared) * state.torsion_between(other, *shared) > 0:
+                crowded = any(
+                    state.geometry.structure.atoms[a].hydrogens == 0 for a in shared if system.kinds[a] == "sp3"
+                )
+                price = book.rule("flat-fusion-quaternary" if crowded else "flat-fusion", "ring")
+                bill.charge("steep flat fusion", ("ring",), tuple(sorted(shared)), price)
 
 
 def _is_trans_fused(geometry: Geometry, companion: tuple[int, ...], first: int, second: int) -> bool:

@@ -23,6 +23,7 @@ Rule = Literal[
     "A(1,3) strain",
     "1,4-diaxial dipoles",
     "trans-fused five-ring",
+    "steep flat fusion",
     "ring shape",
     "pyranose set",
 ]

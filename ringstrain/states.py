@@ -48,6 +48,12 @@ class Shapes:
     rings: tuple[RingShape, ...]
     inverted: tuple[int, ...] = ()
 
+    def torsion_between(self, ring: int, first: int, second: int) -> float:
+        """Endocyclic torsion [degree] of a ring about the bond between two of its atoms."""
+        members = self.geometry.system.rings[ring]
+        place, other = members.place(first), members.place(second)
+        return self.torsion(ring, place if (place + 1) % 6 == other else other)
+
     def torsion(self, ring: int, bond: int) -> float:
         """Endocyclic torsion of a ring bond [degree]."""
         return self.rings[ring].torsions[bond]

@@ -100,7 +100,6 @@ def test_estradiol_is_locked_with_the_angular_methyl_axial() -> None:
 
 
 @pytest.mark.parametrize(("smiles", "methyl"), [(TESTOSTERONE, 15), (CORTISONE, 16)], ids=["testosterone", "cortisone"])
-@pytest.mark.xfail(strict=True, reason="the inverted half-chair of ring A lacks a price for its steep B-ring torsion")
 def test_a_4_en_3_one_keeps_c19_axial_to_both_rings(smiles: str, methyl: int) -> None:
     # Crystal structures: normal 1alpha,2beta half-chair, C19 axial to rings A and B (recalled); MMFF94 puts it lower by
     # about 3 kcal/mol.
