@@ -6,6 +6,8 @@ import math
 from collections.abc import Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING
 
+from rich.console import Group
+from rich.padding import Padding
 from rich.table import Table
 from rich.text import Text
 
@@ -353,7 +355,7 @@ def ledger_table(
         table.add_column(look.text("\N{PLUS-MINUS SIGN}"), justify="right", no_wrap=True)
     table.add_column("how known", overflow="fold", min_width=8, max_width=12 if look.width < 90 else 24)
     for row in rows:
-        cells = [_label(row, look)]
+        cells: list[RenderableType] = [_label(row, look)]
         for count in row.counts:
             price = look.energy(row.line.value_kcal)
             cells.append(look.text(f"{count:.3g} {times} {price}" if count else "\N{EN DASH}"))
@@ -376,12 +378,12 @@ def ledger_table(
     return table
 
 
-def _label(row: Row, look: Look) -> Text:
-    """Rule and groups, with remarks below."""
-    text = look.text(f"{row.line.rule} {'/'.join(row.line.groups)}")
-    for remark in row.remarks:
-        text.append_text(look.text(f"\n  {remark}", "dim"))
-    return text
+def _label(row: Row, look: Look) -> RenderableType:
+    """Rule and groups, with remarks below and set in."""
+    title = look.text(f"{row.line.rule} {'/'.join(row.line.groups)}")
+    if not row.remarks:
+        return title
+    return Group(title, *(Padding(look.text(remark, "dim"), (0, 0, 0, 2)) for remark in row.remarks))
 
 
 def known_words(line: Line, notes: Footnotes) -> str:
