@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
@@ -50,10 +51,11 @@ class StateCheck:
 
     @property
     def agrees(self) -> bool | None:
-        """True when the two differ by no more than both 95 % uncertainties together; None when that is not known."""
+        """True when the two differ by no more than their joint 95 % uncertainty; None when that is not known."""
         if self.difference_kcal is None or self.ledger_uncertainty_kcal is None or self.method_uncertainty_kcal is None:
             return None
-        return abs(self.difference_kcal) <= Z95 * (self.ledger_uncertainty_kcal + self.method_uncertainty_kcal)
+        joint = math.hypot(self.ledger_uncertainty_kcal, self.method_uncertainty_kcal)
+        return abs(self.difference_kcal) <= Z95 * joint + 1e-9
 
     def as_dict(self) -> dict[str, Any]:
         """The state as the JSON of a crosscheck document shows it."""

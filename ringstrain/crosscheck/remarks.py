@@ -32,8 +32,8 @@ def warnings_of(result: SystemResult, states: Sequence[StateCheck], strangers: S
         if gap is not None and state.agrees is False:
             way = "above" if gap > 0 else "below"
             found.append(
-                f"State {state.id}: the method puts it {abs(gap):.1f} kcal/mol {way} the ledger, more than both "
-                "uncertainties allow."
+                f"State {state.id}: the method puts it {abs(gap):.1f} kcal/mol {way} the ledger, more than the "
+                "two uncertainties together allow."
             )
         if state.minima:
             continue

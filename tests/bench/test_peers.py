@@ -45,7 +45,7 @@ class Answer:
     seconds: float
 
 
-def tested_rows() -> list[Score]:
+def rows_that_test() -> list[Score]:
     """Rows that test the prices and have a prediction."""
     scores = [score_row(row, load_tables()) for row in read_equilibria()]
     return [score for score in scores if score.difference_kcal is not None and score.is_independent]
@@ -115,7 +115,7 @@ def peers_of(method: str, answers: Sequence[Answer], total: int) -> list[Peer]:
 
 @pytest.fixture(scope="module")
 def scores() -> list[Score]:
-    return tested_rows()
+    return rows_that_test()
 
 
 def test_ringstrain_beats_mmff_on_accuracy_and_time(scores: list[Score]) -> None:
@@ -129,7 +129,7 @@ def test_ringstrain_beats_mmff_on_accuracy_and_time(scores: list[Score]) -> None
 
 def main(path: str, methods: Sequence[str]) -> None:
     """Compare over all rows and write the table."""
-    rows = tested_rows()
+    rows = rows_that_test()
     lines = peers_of("ringstrain", own_answers(rows), len(rows))
     for method in methods:
         lines.extend(peers_of(method, peer_answers(method, rows), len(rows)))  # type: ignore[arg-type]
