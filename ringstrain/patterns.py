@@ -339,7 +339,7 @@ def enumerate_patterns(
     --------
     >>> best = next(enumerate_patterns(["tBu", "Me"], wish=Wish(cis=("1,4",))))
     >>> best.pattern, [group.group for group in best.groups if group.axial]
-    ('1b-tBu 4b-Me', ['Me'])
+    ('1b-Me 4b-tBu', ['Me'])
     """
     return plan_search(
         groups,
