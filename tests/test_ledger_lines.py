@@ -64,9 +64,7 @@ def test_populations_follow_the_Boltzmann_law(temperature_K: float) -> None:
     assert low.population is not None
     assert high.population is not None
     gap = high.energy_kcal - low.energy_kcal
-    assert low.population / high.population == pytest.approx(
-        math.exp(gap / (1.98720426e-3 * temperature_K)), rel=1e-6
-    )
+    assert low.population / high.population == pytest.approx(math.exp(gap / (1.98720426e-3 * temperature_K)), rel=1e-6)
 
 
 def test_geminal_like_groups_have_two_equal_chairs() -> None:

@@ -125,9 +125,9 @@ def test_dependent_centres_give_the_known_number_of_isomers(smiles: str, isomers
 )
 def test_written_SMILES_keep_the_axial_atoms(smiles: str) -> None:
     structure = rs.read(smiles)
-    assert [a.number for a in structure.atoms] == [
-        a.GetAtomicNum() for a in marked(smiles).GetAtoms()
-    ], "atoms run in input order"
+    assert [a.number for a in structure.atoms] == [a.GetAtomicNum() for a in marked(smiles).GetAtoms()], (
+        "atoms run in input order"
+    )
     before, after = rs.analyze(smiles), rs.analyze(structure.smiles)
     for first, second in zip(before.ring_systems, after.ring_systems, strict=False):
         assert sorted((len(s.axial), round(s.energy_kcal, 6)) for s in first.states) == sorted(

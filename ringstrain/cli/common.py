@@ -187,5 +187,3 @@ def tables_for(table_file: str | None) -> Tables:
     from ringstrain.tables.user import load_user_tables
 
     return load_user_tables(Path(table_file), tables)
-
-

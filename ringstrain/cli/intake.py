@@ -151,9 +151,7 @@ def _from_lines(lines: Iterable[str]) -> Iterator[Record]:
             empty = False
             yield Record(text=text.strip(), name=name.strip())
     if empty:
-        fault = InputError(
-            "Standard input holds no structure.", "Pipe one SMILES per line, or give one as argument."
-        )
+        fault = InputError("Standard input holds no structure.", "Pipe one SMILES per line, or give one as argument.")
         yield Record(text="", fault=fault)
 
 

@@ -157,9 +157,7 @@ def _of_group(tables: Tables, group: Group, smiles: str, conditions: Conditions)
     )
 
 
-def _of_pair(
-    tables: Tables, first: tuple[str, str], second: tuple[str, str], conditions: Conditions
-) -> Topic:
+def _of_pair(tables: Tables, first: tuple[str, str], second: tuple[str, str], conditions: Conditions) -> Topic:
     """A pair: its rows, and what the ledger charges when the groups meet."""
     key = pair_key(first[0], second[0])
     claims = [c for c in tables.claims if len(c.groups) == 2 and not c.ring and claim_key(c) == key]

@@ -128,7 +128,9 @@ def negated(state: State) -> tuple[tuple[float, ...], ...]:
 @given(single_rings())
 def test_flip_swaps_axial_and_equatorial_at_every_site_and_twice_is_the_identity(smiles: str) -> None:
     (system,) = [s for s in systems(smiles) if len(s.rings) == 1][:1]
-    by_torsions = {tuple(ring.torsions for ring in s.detail.shapes.rings): s for s in chairs(system)}
+    by_torsions: dict[tuple[tuple[float, ...], ...], State] = {
+        tuple(ring.torsions for ring in s.detail.shapes.rings): s for s in chairs(system)
+    }
     assert len(by_torsions) == 2
     for state in by_torsions.values():
         other = by_torsions[negated(state)]

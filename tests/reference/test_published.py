@@ -140,7 +140,7 @@ def test_trans_anti_trans_perhydrophenanthrene_has_one_gauche_path() -> None:
 
 def test_trans_anti_trans_perhydroanthracene_has_no_gauche_path() -> None:
     # Common practice, no source.
-    found = []
+    found: list[tuple[int, int]] = []
     for a in ("@", "@@"):
         for b in ("@", "@@"):
             for c in ("@", "@@"):
