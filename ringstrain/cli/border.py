@@ -5,12 +5,15 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Sequence
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import typer
 
 from ringstrain.cli.console import make_console, make_look, prepare_streams, silence
-from ringstrain.errors import RingstrainError
+from ringstrain.errors import RingstrainError, TableError, UsageError
+
+if TYPE_CHECKING:
+    from ringstrain.cli.common import Output
 
 OUR_BUG, USAGE, INTERRUPTED = 1, 2, 130
 HELP_NAMES = ("-h", "--help")
@@ -134,6 +137,25 @@ def complain(error: RingstrainError, asked: str = "") -> None:
     from ringstrain.views.faults import fault_lines
 
     _say(fault_lines(error, asked))
+
+
+def refuse(error: RingstrainError, command: str, label: str, output: Output) -> int:
+    """Say what is wrong with one structure, as a document where documents are asked for, and return the exit code.
+
+    Raises
+    ------
+    UsageError, TableError
+        When the fault is not the structure's: those end the whole command.
+    """
+    if isinstance(error, UsageError | TableError):
+        raise error
+    if output.format == "json":
+        from ringstrain.views.as_json import error_document, to_line
+
+        output.line(to_line(error_document(command, label, error)))
+    else:
+        complain(error, label)
+    return exit_code_of(error)
 
 
 def _say(lines: Sequence[str]) -> None:

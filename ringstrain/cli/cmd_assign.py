@@ -7,9 +7,9 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import nothing_given, only_record
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.consequences.assignment import Assignment
@@ -78,7 +78,7 @@ def assign(
     temperatures = common.parse_temperatures(temperature)
     media = common.media_of(medium)
     tables = common.tables_for(table_file)
-    centres = _atoms(at)
+    centres = common.atoms_of(at)
     from ringstrain.consequences.assign import assign as rank
     from ringstrain.consequences.observations import parse_observed
     from ringstrain.structure.read import read
@@ -100,28 +100,10 @@ def assign(
             for name in media
             for kelvin in temperatures
         )
-    except (UsageError, TableError):
-        raise
     except RingstrainError as error:
-        if output.format == "json":
-            from ringstrain.views.as_json import error_document, to_line
-
-            output.line(to_line(error_document("assign", record.label, error)))
-        else:
-            complain(error, record.label)
-        return exit_code_of(error)
+        return refuse(error, "assign", record.label, output)
     _write(answers, output, most)
     return 0
-
-
-def _atoms(text: str | None) -> tuple[int, ...] | None:
-    """Zero-based atoms of ``2,5``."""
-    if text is None:
-        return None
-    parts = [part for part in text.replace(" ", "").split(",") if part]
-    if not parts or not all(part.isdecimal() and int(part) > 0 for part in parts):
-        raise UsageError(f"{text!r} names no atoms.", "Give atom numbers from 1, such as --at 2,5.")
-    return tuple(int(part) - 1 for part in parts)
 
 
 def _write(answers: tuple[Assignment, ...], output: common.Output, most: int) -> None:

@@ -9,9 +9,9 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import Record, nothing_given, records
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.analysis import Analysis
@@ -74,13 +74,8 @@ def chairs(
     for record in records(structures or []):
         try:
             writer.write(question.answers(record))
-        except TableError:
-            raise
         except RingstrainError as error:
-            if isinstance(error, UsageError):
-                raise
-            worst = max(worst, exit_code_of(error))
-            writer.fail(record, error)
+            worst = max(worst, refuse(error, "chairs", record.label, output))
     return worst
 
 
@@ -198,12 +193,3 @@ class _Writer:
                 console.print()
                 for line in states_text(answers[0], result, shown_states(result), look).splitlines():
                     console.print(look.text(line), soft_wrap=True)
-
-    def fail(self, record: Record, error: RingstrainError) -> None:
-        """Report a structure that failed: a JSON document in its place, else three lines on standard error."""
-        if self.output.format == "json":
-            from ringstrain.views.as_json import error_document, to_line
-
-            self.output.line(to_line(error_document("chairs", record.label, error)))
-        else:
-            complain(error, record.label)

@@ -9,9 +9,9 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import nothing_given, only_record
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.crosscheck.records import CrossCheck, MethodName
@@ -89,16 +89,8 @@ def crosscheck(
             seed=seed,
             keep_going=_watch(seconds, show=not quiet and sys.stderr.isatty()),
         )
-    except (UsageError, TableError):
-        raise
     except RingstrainError as error:
-        if output.format == "json":
-            from ringstrain.views.as_json import error_document, to_line
-
-            output.line(to_line(error_document("crosscheck", record.label, error)))
-        else:
-            complain(error, record.label)
-        return exit_code_of(error)
+        return refuse(error, "crosscheck", record.label, output)
     _write(answer, output)
     return 0
 

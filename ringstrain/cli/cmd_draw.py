@@ -10,9 +10,9 @@ from typing import TYPE_CHECKING, Annotated, Literal
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import nothing_given, only_record
-from ringstrain.errors import InputError, RingstrainError, TableError, UsageError
+from ringstrain.errors import InputError, RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.analysis import Analysis, State, SystemResult
@@ -112,11 +112,8 @@ def draw(
                 out.line(line)
         else:
             _save(output, content)
-    except (UsageError, TableError):
-        raise
     except RingstrainError as error:
-        complain(error, record.label)
-        return exit_code_of(error)
+        return refuse(error, "draw", record.label, out)
     return 0
 
 

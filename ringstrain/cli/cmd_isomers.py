@@ -10,9 +10,9 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import nothing_given, only_record
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import RingstrainError
 
 if TYPE_CHECKING:
     from ringstrain.ranking import Ranking
@@ -67,7 +67,7 @@ def isomers(
     record = only_record(structures or [])
     temperatures = common.parse_temperatures(temperature)
     media = common.media_of(medium)
-    wanted = None if at is None else _atoms(at)
+    wanted = common.atoms_of(at)
     tables = common.tables_for(table_file)
     from ringstrain.isomers import rank_isomers
 
@@ -87,29 +87,10 @@ def isomers(
             for name in media
             for kelvin in temperatures
         )
-    except (UsageError, TableError):
-        raise
     except RingstrainError as error:
-        if output.format == "json":
-            from ringstrain.views.as_json import error_document, to_line
-
-            output.line(to_line(error_document("isomers", record.label, error)))
-        else:
-            complain(error, record.label)
-        return exit_code_of(error)
+        return refuse(error, "isomers", record.label, output)
     _write(rankings, output, most)
     return 0
-
-
-def _atoms(text: str) -> tuple[int, ...]:
-    """Zero-based atoms of ``2,5``."""
-    try:
-        numbers = [int(part) for part in text.replace(" ", "").split(",") if part]
-    except ValueError:
-        numbers = []
-    if not numbers or min(numbers) < 1:
-        raise UsageError(f"{text!r} names no atoms.", "Give atom numbers from 1, such as --at 2,5.")
-    return tuple(number - 1 for number in numbers)
 
 
 def _progress(quiet: bool) -> Callable[[int, int], None] | None:

@@ -9,9 +9,9 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import nothing_given, only_record
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.consequences.nmr import Spectrum
@@ -124,16 +124,8 @@ def nmr(
         raise UsageError("--models goes with --observed-average.", "Say what was observed, such as 'H1-H2=7.1'.")
     try:
         answers = question.answers(record.read(ring))
-    except (UsageError, TableError):
-        raise
     except RingstrainError as error:
-        if output.format == "json":
-            from ringstrain.views.as_json import error_document, to_line
-
-            output.line(to_line(error_document("nmr", record.label, error)))
-        else:
-            complain(error, record.label)
-        return exit_code_of(error)
+        return refuse(error, "nmr", record.label, output)
     _write(answers, output, question.tables)
     return 0
 

@@ -7,9 +7,9 @@ from typing import Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import complain, exit_code_of
+from ringstrain.cli.border import refuse
 from ringstrain.cli.intake import nothing_given, only_record
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import RingstrainError
 
 HELP = """What each chair can and cannot do: which state reacts, what it costs, which product, how surely and why.
 
@@ -90,16 +90,8 @@ def reactivity(
             for name in media
             for kelvin in temperatures
         ]
-    except (TableError, UsageError):
-        raise
     except RingstrainError as error:
-        if output.format == "json":
-            from ringstrain.views.as_json import error_document, to_line
-
-            output.line(to_line(error_document("reactivity", record.label, error)))
-        else:
-            complain(error, record.label)
-        return exit_code_of(error)
+        return refuse(error, "reactivity", record.label, output)
     if output.format == "plain":
         output.line(views.plain_header(output.look.units))
     for place, answer in enumerate(answers):

@@ -162,6 +162,22 @@ def _is_temperature(value: float) -> bool:
     return 0 < value <= 2000
 
 
+def atoms_of(text: str | None) -> tuple[int, ...] | None:
+    """Zero-based atoms of ``2,5``; None for None.
+
+    Raises
+    ------
+    UsageError
+        If it is no list of numbers from 1.
+    """
+    if text is None:
+        return None
+    parts = [part for part in text.replace(" ", "").split(",") if part]
+    if not parts or not all(part.isdecimal() and int(part) > 0 for part in parts):
+        raise UsageError(f"{text!r} names no atoms.", "Give atom numbers from 1, such as --at 2,5.")
+    return tuple(int(part) - 1 for part in parts)
+
+
 def media_of(name: str) -> tuple[str, ...]:
     """The media a name stands for: all four for ``all``."""
     return MEDIA if name.lower() == "all" else (name,)
