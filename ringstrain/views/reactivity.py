@@ -189,6 +189,7 @@ def _one_class(answer: Reactivity, look: Look) -> Iterator[RenderableType]:
     yield table
     if len(findings) > _MOST:
         yield look.text(f"... and {len(findings) - _MOST} more (--format plain lists all).", "dim")
+    yield from _by_product(findings, look)
     yield Text()
     for place, f in enumerate(findings[:_MOST], start=1):
         yield look.text(f"{place}. {f.pathway}. {f.reason} ({f.confidence})")
@@ -196,6 +197,28 @@ def _one_class(answer: Reactivity, look: Look) -> Iterator[RenderableType]:
     if answer.alternatives:
         yield Text()
         yield from _alternatives(answer.alternatives, look)
+
+
+def _by_product(findings: tuple[Finding, ...], look: Look) -> Iterator[RenderableType]:
+    """Products with their summed shares, where one stands in several rows."""
+    for reagent, shares in _totals(findings).items():
+        if len(shares) == sum(f.reagent == reagent and bool(f.product_smiles) for f in findings):
+            continue
+        ranked = sorted(shares.items(), key=lambda item: -(item[1] or 0.0))
+        sums = ", ".join(f"{product} {percent(share)}" for product, share in ranked if share is not None)
+        if sums:
+            yield look.text(f"Over all states: {sums}.")
+
+
+def _totals(findings: tuple[Finding, ...]) -> dict[str, dict[str, float | None]]:
+    """Summed share of each product of each reagent; None when one part is unknown."""
+    totals: dict[str, dict[str, float | None]] = {}
+    for f in findings:
+        if f.product_smiles:
+            own = totals.setdefault(f.reagent, {})
+            before = own.get(f.product_smiles, 0.0)
+            own[f.product_smiles] = None if before is None or f.share is None else before + f.share
+    return totals
 
 
 def _with_limits(f: Finding) -> str:
@@ -226,16 +249,10 @@ def _relative(findings: tuple[Finding, ...], look: Look) -> Iterator[RenderableT
 def _alternatives(findings: tuple[Finding, ...], look: Look) -> Iterator[RenderableType]:
     """Other reagent classes: product and summed share each."""
     yield look.text("Other reagents (--reagent NAME)", "bold")
-    totals: dict[str, dict[str, float | None]] = {}
-    for f in findings:
-        if f.product_smiles:
-            own = totals.setdefault(f.reagent, {})
-            before = own.get(f.product_smiles)
-            own[f.product_smiles] = f.share if before is None or f.share is None else before + f.share
     table = new_table(look)
     for name in ("reagent", "main product", "share"):
         table.add_column(look.text(name), overflow="fold")
-    for reagent, shares in totals.items():
+    for reagent, shares in _totals(findings).items():
         product = max(shares, key=lambda smiles: shares[smiles] or 0.0)
         share = shares[product]
         table.add_row(
