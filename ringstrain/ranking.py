@@ -6,9 +6,8 @@ from dataclasses import dataclass, field
 from importlib import import_module
 from typing import Any, Literal
 
-from ringstrain.results import SCHEMA
+from ringstrain.results import Answered
 from ringstrain.structure.records import Structure
-from ringstrain.tables.conditions import Conditions
 
 SymmetryWord = Literal["meso", "racemic", "achiral", "single enantiomer"]
 
@@ -96,7 +95,7 @@ class Impossible:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Ranking:
+class Ranking(Answered):
     """All stereoisomers over the free centres, most stable first.
 
     Attributes
@@ -115,46 +114,16 @@ class Ranking:
         What the reader should know.
     """
 
-    structure: Structure
-    conditions: Conditions
     isomers: tuple[Isomer, ...]
     impossible: tuple[Impossible, ...]
     free_atoms: tuple[int, ...]
     input_rank: int | None
     notes: tuple[str, ...]
 
-    @property
-    def input(self) -> str:
-        """The input as given."""
-        return self.structure.text
-
-    @property
-    def smiles(self) -> str:
-        """Canonical SMILES of the input."""
-        return self.structure.smiles
-
-    @property
-    def temperature_K(self) -> float:
-        """Temperature [K]."""
-        return self.conditions.temperature_K
-
-    @property
-    def medium(self) -> str:
-        """Medium class, or the solvent when one was named."""
-        return self.conditions.solvent or self.conditions.medium
-
     def as_dict(self) -> dict[str, Any]:
         """The isomers document, ready for JSON."""
-        from ringstrain import __version__
-
         return {
-            "schema": SCHEMA,
-            "kind": "isomers",
-            "version": __version__,
-            "input": self.input,
-            "smiles": self.smiles,
-            "temperature_K": self.temperature_K,
-            "medium": self.medium,
+            **self.head("isomers"),
             "free_atoms": list(self.free_atoms),
             "isomers": [isomer.as_dict() for isomer in self.isomers],
             "impossible": [isomer.as_dict() for isomer in self.impossible],

@@ -175,7 +175,57 @@ class SystemResult:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Analysis:
+class Answered:
+    """What every answer about one structure carries: the question.
+
+    Attributes
+    ----------
+    structure
+        As read.
+    conditions
+        Medium and temperature.
+    """
+
+    structure: Structure
+    conditions: Conditions
+
+    @property
+    def input(self) -> str:
+        """The input as given."""
+        return self.structure.text
+
+    @property
+    def smiles(self) -> str:
+        """Canonical SMILES of the input."""
+        return self.structure.smiles
+
+    @property
+    def temperature_K(self) -> float:
+        """Temperature [K]."""
+        return self.conditions.temperature_K
+
+    @property
+    def medium(self) -> str:
+        """Medium class, or the solvent when one was named."""
+        return self.conditions.solvent or self.conditions.medium
+
+    def head(self, kind: str) -> dict[str, Any]:
+        """First members of a JSON document about it."""
+        from ringstrain import __version__
+
+        return {
+            "schema": SCHEMA,
+            "kind": kind,
+            "version": __version__,
+            "input": self.input,
+            "smiles": self.smiles,
+            "temperature_K": self.temperature_K,
+            "medium": self.medium,
+        }
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Analysis(Answered):
     """The answer for one structure.
 
     Attributes
@@ -192,44 +242,14 @@ class Analysis:
         Which tables priced it.
     """
 
-    structure: Structure
-    conditions: Conditions
     ring_systems: tuple[SystemResult, ...]
     notes: tuple[str, ...]
     tables_revision: str
 
-    @property
-    def input(self) -> str:
-        """The input as given."""
-        return self.structure.text
-
-    @property
-    def smiles(self) -> str:
-        """Canonical SMILES."""
-        return self.structure.smiles
-
-    @property
-    def temperature_K(self) -> float:
-        """Temperature [K]."""
-        return self.conditions.temperature_K
-
-    @property
-    def medium(self) -> str:
-        """Medium class, or the solvent when one was named."""
-        return self.conditions.solvent or self.conditions.medium
-
     def as_dict(self) -> dict[str, Any]:
         """The chairs document, ready for JSON."""
-        from ringstrain import __version__
-
         return {
-            "schema": SCHEMA,
-            "kind": "chairs",
-            "version": __version__,
-            "input": self.input,
-            "smiles": self.smiles,
-            "temperature_K": self.temperature_K,
-            "medium": self.medium,
+            **self.head("chairs"),
             "ring_systems": [result.as_dict() for result in self.ring_systems],
             "notes": list(self.notes),
         }

@@ -12,7 +12,7 @@ from ringstrain.consequences.freezing import FreezingOut, Spectrometer, find_fre
 from ringstrain.consequences.hydrogens import Hydrogen, find_hydrogens
 from ringstrain.consequences.multiplets import Multiplet, read_multiplet
 from ringstrain.consequences.shifts import CarbonShift, find_shifts
-from ringstrain.results import SCHEMA, Analysis
+from ringstrain.results import Analysis
 from ringstrain.structure.records import Structure
 from ringstrain.tables import Tables, load_tables
 from ringstrain.tables.spectra import SpectralTables, load_spectra
@@ -134,18 +134,10 @@ class Spectrum:
 
     def as_dict(self) -> dict[str, Any]:
         """The nmr document, ready for JSON."""
-        from ringstrain import __version__
-
         analysis = self.analysis
         known = [block for block in self.freezing if block is not None]
         return {
-            "schema": SCHEMA,
-            "kind": "nmr",
-            "version": __version__,
-            "input": analysis.input,
-            "smiles": analysis.smiles,
-            "temperature_K": analysis.temperature_K,
-            "medium": analysis.medium,
+            **analysis.head("nmr"),
             "ring_systems": [
                 {
                     "rings": [list(ring) for ring in result.rings],

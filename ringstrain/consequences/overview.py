@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import Any
 
-from ringstrain.analysis import SCHEMA, Analysis
+from ringstrain.analysis import Analysis
 from ringstrain.consequences.answer import CLASSES, check_class, find
 from ringstrain.consequences.finding import Finding, Verdict
 from ringstrain.consequences.reduction import REAGENTS as KETONE_REAGENTS
@@ -47,16 +47,8 @@ class Reactivity:
 
     def as_dict(self) -> dict[str, Any]:
         """The reactivity document, ready for JSON."""
-        from ringstrain import __version__
-
         return {
-            "schema": SCHEMA,
-            "kind": "reactivity",
-            "version": __version__,
-            "input": self.analysis.input,
-            "smiles": self.analysis.smiles,
-            "temperature_K": self.analysis.temperature_K,
-            "medium": self.analysis.medium,
+            **self.analysis.head("reactivity"),
             "reaction": self.reaction or None,
             "findings": [finding.as_dict() for finding in self.findings],
             "alternatives": [finding.as_dict() for finding in self.alternatives],

@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
-from ringstrain.results import SCHEMA, Analysis
+from ringstrain.results import Analysis
 from ringstrain.units import Z95
 
 MethodName = Literal["mmff", "xtb"]
@@ -159,16 +159,8 @@ class CrossCheck:
 
     def as_dict(self) -> dict[str, Any]:
         """The crosscheck document, ready for JSON."""
-        from ringstrain import __version__
-
         return {
-            "schema": SCHEMA,
-            "kind": "crosscheck",
-            "version": __version__,
-            "input": self.analysis.input,
-            "smiles": self.analysis.smiles,
-            "temperature_K": self.analysis.temperature_K,
-            "medium": self.analysis.medium,
+            **self.analysis.head("crosscheck"),
             "method": self.method,
             "method_name": self.method_name,
             "conformers": self.conformers,
