@@ -145,7 +145,7 @@ def charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: Bi
                 (n for n in structure.neighbours[flat] if n not in ring.atoms and structure.bond(flat, n).order == 2),
                 None,
             )
-            if end is None or structure.atoms[end].number != 6 or not _faces_side(geometry, flat, end, atom):
+            if end is None or structure.atoms[end].number not in (6, 7) or not _faces_side(geometry, flat, end, atom):
                 continue
             group = parties.groups[(atom, placed.site.neighbour)]
             price = parties.book.rule("allylic-z", group.key)

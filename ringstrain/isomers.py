@@ -140,7 +140,8 @@ def rank_isomers(
 def _remarks(total: int, free: tuple[int, ...]) -> tuple[str, ...]:
     if not free:
         return ("No ring stereocentre is free: the input is the only isomer.",)
-    return (f"{total} configurations of {len(free)} centres counted on labelled atoms.",)
+    centres = "one centre" if len(free) == 1 else f"{len(free)} centres"
+    return (f"{total} configurations of {centres} counted on labelled atoms.",)
 
 
 def _left_open(molecule: Structure, systems: Sequence[RingSystem]) -> tuple[str, ...]:

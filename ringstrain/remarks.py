@@ -36,6 +36,7 @@ def remarks(structure: Structure, results: Sequence[SystemResult], book: PriceBo
         *_structural(structure, results),
         *_acyl_rings(structure, results),
         *_sugars(results, book),
+        *_hydroxyl_rows(results, book),
         *_ionised(structure, results, book),
         *_carried(results, book),
     )
@@ -96,6 +97,25 @@ def _sugars(results: Sequence[SystemResult], book: PriceBook) -> Iterator[str]:
                 "This sugar ring carries a group outside the closed set of sugar terms (OH, CH3, CH2OH, OR at C1); "
                 "the general model prices it, less surely."
             )
+
+
+def _hydroxyl_rows(results: Sequence[SystemResult], book: PriceBook) -> Iterator[str]:
+    """Several hydrogen bonds between axial hydroxyls in one state: each is priced as if it were alone."""
+    if book.conditions.accepts_hydrogen_bonds:
+        return
+    for result in results:
+        bonded = (
+            sum(
+                line.count for line in state.lines if line.rule == "syn-axial" and line.groups == ("hydroxy", "hydroxy")
+            )
+            for state in result.states
+        )
+        if max(bonded, default=0.0) > 1:
+            yield (
+                "Hydrogen bonds between axial hydroxyls are priced one by one, as measured on single pairs; several in "
+                "one state were never measured, and polyols are seldom met outside water: see --medium protic."
+            )
+            return
 
 
 def _ionised(structure: Structure, results: Sequence[SystemResult], book: PriceBook) -> Iterator[str]:
