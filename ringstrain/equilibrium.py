@@ -137,7 +137,7 @@ def unknown_difference(favoured: Ledger, other: Ledger) -> str:
     lines = [line for line in differing_lines(favoured, other) if line.value_kcal is None]
     if not lines:
         return ""
-    if any(line.polar for line in lines):
+    if any(line.polar or line.rule == "A-value" for line in lines):  # either may have any sign
         return "not determined"
     counts = {line.key: line.count for line in favoured.lines}
     more_favoured = [line for line in lines if counts.get(line.key, 0.0) > _count_of(other, line)]
@@ -180,7 +180,8 @@ def populations(
 
     Notes
     -----
-    Delta method on ln p: d ln p_i = -(dE_i - sum_j p_j dE_j)/RT.
+    Delta method on the log odds, ln p/(1 - p): their change is -(dE_i - <dE of the others>)/RT.  Between two states
+    these are the limits of K; on ln p the favoured share would look surer than K allows.
     """
     energies = list(energies_kcal) if energies_kcal is not None else [ledger.total_kcal for ledger in ledgers]
     shares = weights(energies, temperature_K)
@@ -202,6 +203,7 @@ def populations(
             key = ("model", str(form))
             counts[key] = [1.0 if number in members else 0.0 for number in range(count)]
             sigmas[key] = model_terms.get(regime, 0.0)
+    others = [math.fsum(shares[:number] + shares[number + 1 :]) for number in range(count)]
     variances = [0.0] * count
     for key, row in counts.items():
         sigma = sigmas[key]
@@ -209,9 +211,13 @@ def populations(
         for number, own in enumerate(row):
             variances[number] += ((own - mean) * sigma) ** 2
     outcome = []
-    for share, variance in zip(shares, variances, strict=True):
-        factor = math.exp(min(Z95 * math.sqrt(variance) / (R_KCAL * temperature_K), 50.0))
-        outcome.append(Population(share, share / factor, min(1.0, share * factor)))
+    for share, rest, variance in zip(shares, others, variances, strict=True):
+        if not rest:
+            outcome.append(Population(share, share, share))
+            continue
+        width = min(Z95 * math.sqrt(variance) / (rest * R_KCAL * temperature_K), 50.0)
+        factor = math.exp(width)
+        outcome.append(Population(share, share / (share + rest * factor), share / (share + rest / factor)))
     return outcome
 
 

@@ -151,7 +151,7 @@ def _unknown(state: State) -> dict[object, float]:
     for line in state.lines:
         if line.value_kcal is None:
             tally[line.key] = tally.get(line.key, 0.0) + line.count
-            if line.polar:
+            if line.polar or line.rule == "A-value":
                 tally[_POLAR] = 1.0
     return tally
 
