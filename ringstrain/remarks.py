@@ -34,6 +34,7 @@ def remarks(structure: Structure, results: Sequence[SystemResult], book: PriceBo
     """
     return (
         *_structural(structure, results),
+        *_open_double_bonds(structure, results),
         *_acyl_rings(structure, results),
         *_sugars(results, book),
         *_hydroxyl_rows(results, book),
@@ -50,6 +51,28 @@ def _structural(structure: Structure, results: Sequence[SystemResult]) -> Iterat
     if side:
         numbers = ", ".join(str(i + 1) for i in side)
         yield f"Configuration at atom {numbers} (outside the six-rings) not given; it does not enter the answer."
+
+
+def _open_double_bonds(structure: Structure, results: Sequence[SystemResult]) -> Iterator[str]:
+    """Double bonds to a ring whose open geometry decides whether a neighbouring group is crowded."""
+    for result in results:
+        members = result.system.atom_set
+        for atom, kind in result.system.kinds.items():
+            if kind != "sp2":
+                continue
+            beside = [n for n in structure.neighbours[atom] if n in members]
+            if not any(key[0] in beside for key in result.groups):
+                continue
+            for end in structure.neighbours[atom]:
+                bond = structure.bond(atom, end)
+                if end in members or bond.order != 2 or bond.stereo:
+                    continue
+                outer = [n for n in structure.neighbours[end] if n != atom and structure.atoms[n].number > 1]
+                if structure.atoms[end].number in (6, 7) and len(outer) == 1:
+                    yield (
+                        f"Geometry of the double bond {atom + 1}={end + 1} not given; the group on it is taken to "
+                        "point away from its neighbours' groups. Where it points at one, that group goes axial."
+                    )
 
 
 def _acyl_rings(structure: Structure, results: Sequence[SystemResult]) -> Iterator[str]:
