@@ -81,15 +81,6 @@ def occupant_of(structure: Structure, site: Site) -> Occupant:
     return "hydrogen" if structure.atoms[site.ring_atom].hydrogens > -1 - site.neighbour else "lone pair"
 
 
-def site_torsions(state: Shapes, site: Site) -> tuple[float, float]:
-    """Torsions of a site to the ring path ahead and to the one behind [degree]."""
-    torsions = state.rings[site.ring].torsions
-    return (
-        wrap(torsions[site.place] + site.offset_ahead),
-        wrap(torsions[site.place - 1] + site.offset_behind),
-    )
-
-
 @lru_cache(maxsize=256)
 def _positions(torsions: Torsions) -> tuple[tuple[Position, Position], ...]:
     """Position of the site of face +1 and of face -1 on each ring atom of a shape."""

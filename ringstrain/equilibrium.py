@@ -137,7 +137,7 @@ def unknown_difference(favoured: Ledger, other: Ledger) -> str:
     lines = [line for line in differing_lines(favoured, other) if line.value_kcal is None]
     if not lines:
         return ""
-    if any(line.polar or line.rule == "A-value" for line in lines):  # either may have any sign
+    if any(line.of_any_sign for line in lines):
         return "not determined"
     counts = {line.key: line.count for line in favoured.lines}
     more_favoured = [line for line in lines if counts.get(line.key, 0.0) > _count_of(other, line)]

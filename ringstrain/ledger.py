@@ -105,6 +105,11 @@ class Line:
         return self.price.note
 
     @property
+    def of_any_sign(self) -> bool:
+        """True when the price, were it known, might be a gain: dipoles may attract, a group may prefer the axis."""
+        return self.polar or self.rule == "A-value"
+
+    @property
     def subtotal_kcal(self) -> float | None:
         """Count times price [kcal/mol]."""
         return None if self.value_kcal is None else self.count * self.value_kcal

@@ -5,7 +5,6 @@ Energies are kcal/mol and temperatures kelvin everywhere inside the package.
 
 from __future__ import annotations
 
-import math
 from typing import Final
 
 #: Molar gas constant [kcal/(mol K)]: 8.314462618 J/(mol K), exact in the 2019 SI, over 4184 J/kcal.
@@ -52,13 +51,3 @@ def to_kcal(value: float, unit: str) -> float:
         return value * factors[unit]
     except KeyError:
         raise ValueError(f"{unit!r} is not an energy unit; use kcal/mol or kJ/mol") from None
-
-
-def equilibrium_constant(dg_kcal: float, temperature_K: float) -> float:
-    """K = [favoured]/[other] for a free energy difference G(other) - G(favoured) [kcal/mol]."""
-    return math.exp(min(dg_kcal / (R_KCAL * temperature_K), 700.0))
-
-
-def free_energy(ratio: float, temperature_K: float) -> float:
-    """RT ln K [kcal/mol] for a ratio K [-] at a temperature [K]."""
-    return R_KCAL * temperature_K * math.log(ratio)

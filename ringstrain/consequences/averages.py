@@ -13,7 +13,7 @@ from ringstrain.units import R_KCAL
 
 #: Share up to which states of unknown energy may be left out of averages [-].
 NEGLIGIBLE = 0.01
-_POLAR = "polar"
+_ANY_SIGN = "of any sign"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -134,7 +134,7 @@ def shares_of(result: SystemResult, temperature_K: float) -> tuple[float, ...] |
         return tuple(p for p in known if p is not None)
     tallies = [_unknown(state) for state in result.states]
     beyond = [tally != tallies[0] for tally in tallies]
-    if any(tally.pop(_POLAR, 0.0) for tally, far in zip(tallies, beyond, strict=True) if far):
+    if any(tally.pop(_ANY_SIGN, 0.0) for tally, far in zip(tallies, beyond, strict=True) if far):
         return None
     if any(tally.get(key, 0.0) < count for tally in tallies for key, count in tallies[0].items()):
         return None
@@ -146,13 +146,13 @@ def shares_of(result: SystemResult, temperature_K: float) -> tuple[float, ...] |
 
 
 def _unknown(state: State) -> dict[object, float]:
-    """How often each unpriced line counts in a state; an entry of its own when one is polar and may lower it."""
+    """How often each unpriced line counts in a state; an entry of its own when one may lower it."""
     tally: dict[object, float] = {}
     for line in state.lines:
         if line.value_kcal is None:
             tally[line.key] = tally.get(line.key, 0.0) + line.count
-            if line.polar or line.rule == "A-value":
-                tally[_POLAR] = 1.0
+            if line.of_any_sign:
+                tally[_ANY_SIGN] = 1.0
     return tally
 
 

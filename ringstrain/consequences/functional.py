@@ -177,11 +177,6 @@ def epoxides(scene: Scene) -> tuple[tuple[int, int, int], ...]:
     return tuple(found)
 
 
-def carbon_neighbours(structure: Structure, atom: int) -> int:
-    """Carbons bonded to an atom."""
-    return sum(structure.atoms[n].number == 6 for n in structure.neighbours[atom])
-
-
 def is_conjugating(structure: Structure, atom: int) -> bool:
     """True for an aryl, vinyl, acyl or nitrile carbon."""
     record = structure.atoms[atom]

@@ -23,11 +23,6 @@ def set_face(draft: Draft, scene: Scene, atom: int, ring: int, first: int, other
     draft.configure(atom, (atoms[(place + 1) % 6], atoms[place - 1], first, other), clockwise=face > 0)
 
 
-def other_site(scene: Scene, atom: int, neighbour: int, ring: int) -> int:
-    """Code of what stands on the site opposite to a neighbour."""
-    return next(s.neighbour for s in scene.sites(atom) if s.ring == ring and s.neighbour != neighbour)
-
-
 def alkene(scene: Scene, gone: Iterable[tuple[int, int]], bond: tuple[int, int]) -> str:
     """SMILES after branches or hydrogens (root, first; negative for a hydrogen) leave and a double bond forms."""
     draft = Draft(scene.settled)
