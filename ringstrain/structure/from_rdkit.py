@@ -119,7 +119,7 @@ def _bonds(
         kind = b.GetBondType()
         first, second = AtomIndex(i), AtomIndex(j)
         if kind == _SINGLE:
-            bond = Bond(first, second, 1)
+            bond = _single(first, second)
         else:
             aromatic = b.GetIsAromatic()
             if aromatic:
@@ -134,6 +134,12 @@ def _bonds(
         adjacency[i].append(second)
         adjacency[j].append(first)
     return tuple(bonds), table, adjacency
+
+
+@lru_cache(maxsize=16384)
+def _single(first: AtomIndex, second: AtomIndex) -> Bond:
+    """One shared record for the single bonds between atoms of these numbers."""
+    return Bond(first, second, 1)
 
 
 def _bond_stereo(bond: Any, index: list[int]) -> tuple[Literal["", "cis", "trans"], tuple[AtomIndex, AtomIndex] | None]:

@@ -116,7 +116,7 @@ def _read_smiles(text: str) -> Structure:
         _sanitize(mol, text=text)
         if "/" in core or "\\" in core:
             Chem.SetBondStereoFromDirections(mol)
-    spans = tuple((m.start(), m.end()) for m in _ATOM_TOKEN.finditer(core))
+    spans = tuple([found.span() for found in _ATOM_TOKEN.finditer(core)])
     return structure_from_rdkit(mol, text=text, name=name, spans=spans if len(spans) == mol.GetNumAtoms() else ())
 
 

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
 from typing import Any
 
 from rdkit import Chem, rdBase
 
-from ringstrain.structure.records import Structure
+from ringstrain.structure.records import Atom, Structure
 
+_CLOCKWISE = Chem.ChiralType.CHI_TETRAHEDRAL_CW
+_COUNTER = Chem.ChiralType.CHI_TETRAHEDRAL_CCW
+_UNMARKED = Chem.ChiralType.CHI_UNSPECIFIED
 _ORDERS = {0: Chem.BondType.DATIVE, 1: Chem.BondType.SINGLE, 2: Chem.BondType.DOUBLE, 3: Chem.BondType.TRIPLE}
 
 
@@ -16,15 +20,27 @@ def to_rdkit(structure: Structure) -> Any:
 
     The molecule is marked as stereo-perceived, so that writing it does not clean ring stereo away.
     """
+    mol = _assembled(structure)
+    for atom in mol.GetAtoms():
+        if atom.GetIsAromatic() or atom.GetFormalCharge() or atom.GetIsotope() or atom.GetNumRadicalElectrons():
+            continue
+        atom.SetNoImplicit(False)
+        atom.SetNumExplicitHs(0)
+    mol.UpdatePropertyCache(strict=False)
+    for atom, record in zip(mol.GetAtoms(), structure.atoms, strict=True):
+        if atom.GetTotalNumHs() != record.hydrogens:
+            atom.SetNoImplicit(True)
+            atom.SetNumExplicitHs(record.hydrogens)
+    mol.UpdatePropertyCache(strict=False)
+    mol.SetIntProp("_StereochemDone", 1)
+    return mol.GetMol()
+
+
+def _assembled(structure: Structure) -> Any:
+    """An RDKit molecule with every hydrogen count explicit; a SMILES does not show the difference, a molfile does."""
     mol = Chem.RWMol()
     for record in structure.atoms:
-        atom = Chem.Atom(record.number)
-        atom.SetFormalCharge(record.charge)
-        atom.SetIsotope(record.isotope)
-        atom.SetNumExplicitHs(record.hydrogens)
-        atom.SetNoImplicit(True)
-        atom.SetNumRadicalElectrons(record.radicals)
-        mol.AddAtom(atom)
+        mol.AddAtom(_mould(record))
     for bond in structure.bonds:
         mol.AddBond(bond.begin, bond.end, _ORDERS[bond.order])
     for index, configuration in enumerate(structure.configurations):
@@ -34,9 +50,7 @@ def to_rdkit(structure: Structure) -> Any:
         order = [b.GetOtherAtomIdx(index) for b in atom.GetBonds()]
         if len(order) == 3:
             order.append(-1)
-        sign = configuration.handedness(tuple(order))
-        kind = Chem.ChiralType.CHI_TETRAHEDRAL_CW if sign > 0 else Chem.ChiralType.CHI_TETRAHEDRAL_CCW
-        atom.SetChiralTag(kind)
+        atom.SetChiralTag(_CLOCKWISE if configuration.handedness(tuple(order)) > 0 else _COUNTER)
     Chem.SanitizeMol(mol)
     for bond in structure.bonds:
         if bond.stereo and bond.stereo_atoms:
@@ -47,20 +61,19 @@ def to_rdkit(structure: Structure) -> Any:
             target.SetStereoAtoms(first, second)
             cis = bond.stereo == "cis"
             target.SetStereo(Chem.BondStereo.STEREOCIS if cis else Chem.BondStereo.STEREOTRANS)
-    for atom in mol.GetAtoms():
-        if atom.GetIsAromatic() or atom.GetFormalCharge() or atom.GetIsotope() or atom.GetNumRadicalElectrons():
-            continue
-        atom.SetNoImplicit(False)
-        atom.SetNumExplicitHs(0)
-    mol.UpdatePropertyCache(strict=False)
-    wanted = [record.hydrogens for record in structure.atoms]
-    for atom, hydrogens in zip(mol.GetAtoms(), wanted, strict=True):
-        if atom.GetTotalNumHs() != hydrogens:
-            atom.SetNoImplicit(True)
-            atom.SetNumExplicitHs(hydrogens)
-    mol.UpdatePropertyCache(strict=False)
-    mol.SetIntProp("_StereochemDone", 1)
-    return mol.GetMol()
+    return mol
+
+
+@lru_cache(maxsize=4096)
+def _mould(record: Atom) -> Any:
+    """The RDKit atom of a record; a molecule copies it, so that all atoms that are alike share one mould."""
+    atom = Chem.Atom(record.number)
+    atom.SetFormalCharge(record.charge)
+    atom.SetIsotope(record.isotope)
+    atom.SetNumExplicitHs(record.hydrogens)
+    atom.SetNoImplicit(True)
+    atom.SetNumRadicalElectrons(record.radicals)
+    return atom
 
 
 def write_smiles(structure: Structure, *, canonical: bool = True) -> str:
@@ -79,19 +92,18 @@ def write_smiles(structure: Structure, *, canonical: bool = True) -> str:
         The SMILES.
     """
     with rdBase.BlockLogs():
-        mol = to_rdkit(structure)
-        _drop_idle_marks(mol)
+        mol = _assembled(structure)
+        _drop_idle_marks(mol, [i for i, given in enumerate(structure.configurations) if given is not None])
         text: str = Chem.MolToSmiles(mol, canonical=canonical)
     return text
 
 
-def _drop_idle_marks(mol: Any) -> None:
+def _drop_idle_marks(mol: Any, marked: list[int]) -> None:
     """Clear marks at atoms that cannot be stereocentres; dependent ring centres keep theirs."""
-    tagged = [a for a in mol.GetAtoms() if a.GetChiralTag() != Chem.ChiralType.CHI_UNSPECIFIED]
-    if not tagged:
-        return
-    possible = {found.centeredOn for found in Chem.FindPotentialStereo(Chem.Mol(mol), cleanIt=False, flagPossible=True)}
-    for atom in tagged:
-        if atom.GetIdx() not in possible:
-            atom.SetChiralTag(Chem.ChiralType.CHI_UNSPECIFIED)
+    if marked:
+        copy = Chem.Mol(mol)  # the search leaves ranks behind that would change the canonical order
+        possible = {found.centeredOn for found in Chem.FindPotentialStereo(copy, cleanIt=False, flagPossible=True)}
+        for index in marked:
+            if index not in possible:
+                mol.GetAtomWithIdx(index).SetChiralTag(_UNMARKED)
     mol.SetIntProp("_StereochemDone", 1)
