@@ -123,7 +123,8 @@ def survey(state: Shapes) -> Survey:
     if any(ring.shape != "chair" for ring in state.rings):
         contacts.extend(_eclipsed(state))
     contacts.extend(_syn_axial(state, placed))
-    contacts.extend(_peri(geometry, gauche))
+    if len(geometry.system.rings) > 1:
+        contacts.extend(_peri(geometry, gauche))
     contacts.extend(_geminal(geometry))
     return Survey(placed, tuple(contacts))
 
@@ -177,19 +178,18 @@ def _gauche(state: Shapes) -> list[tuple[Path, float]]:
     low, high = GAUCHE
     for path in state.geometry.paths:
         torsion = _torsion_of(rings, path)
-        if low <= abs(torsion) < high:
+        if low <= torsion < high or -high < torsion <= -low:
             found.append((path, torsion))
     return found
 
 
 def _torsion_of(rings: tuple[RingShape, ...], path: Path) -> float:
     """Torsion of a path in a state [degree]: the mean over the rings that share its bond."""
-    views = path.views
-    number, bond, offset = views[0]
-    torsion = wrap(rings[number].torsions[bond] + offset)
-    if len(views) == 1:
-        return torsion
-    return mean_angle([torsion, *[rings[n].torsions[p] + o for n, p, o in views[1:]]])
+    number, bond, offset = path.views[0]
+    torsion = rings[number].torsions[bond] + offset
+    if len(path.views) > 1:
+        return mean_angle([torsion, *[rings[n].torsions[p] + o for n, p, o in path.views[1:]]])
+    return torsion - 360.0 if torsion > 180.0 else torsion + 360.0 if torsion <= -180.0 else torsion
 
 
 def _eclipsed(state: Shapes) -> list[Contact]:
@@ -207,18 +207,15 @@ def _eclipsed(state: Shapes) -> list[Contact]:
 
 def _syn_axial(state: Shapes, placed: tuple[Placed, ...]) -> list[Contact]:
     """Pairs of axial sites on ring atoms i and i+2 of one ring, on one face."""
-    axial: dict[tuple[int, int], Placed] = {}
-    for item in placed:
-        if item.position == "axial":
-            axial[(item.site.ring, item.site.place)] = item
+    axial = {(item.site.ring, item.site.place): item for item in placed if item.position == "axial"}
     found = []
     for (ring, place), first in axial.items():
         second = axial.get((ring, (place + 2) % 6))
-        if second is None or first.site.face != second.site.face:
+        if second is None or (first.occupant != "atom" and second.occupant != "atom"):
+            continue
+        if first.site.face != second.site.face:
             continue
         kinds = {first.occupant, second.occupant}
-        if "atom" not in kinds:
-            continue
         middle = state.geometry.system.rings[ring].atoms[(place + 1) % 6]
         ends = [first.site.neighbour, second.site.neighbour]
         atoms = (

@@ -131,8 +131,8 @@ class Geometry:
             if not sites and self.structure.atoms[atom].hydrogens:
                 sites = [Site(atom, number, place, IMPLICIT, 0)]
             return tuple(sites)
-        first, second = (n for n in order if n not in (behind, ahead))
-        sign = _sign(order, (ahead, behind, first, second))
+        first, second = [n for n in order if n != behind and n != ahead]
+        sign = _sign(order, ahead, behind)
         return Site(atom, number, place, first, sign), Site(atom, number, place, second, -sign)
 
     def offset_ahead(self, number: int, place: int, neighbour: int) -> float:
@@ -166,29 +166,34 @@ class Geometry:
         """Heavy-atom paths across ring bonds whose four atoms do not all lie in one ring."""
         found = []
         rings_at = self._rings_at
-        atoms = self.structure.atoms
-        for bond, places in self.ring_bonds.items():
-            if self.structure.bond(*bond).order != 1 or self.structure.bond(*bond).aromatic:
+        for (b, c), places in self.ring_bonds.items():
+            bond = self.structure.bond(b, c)
+            if bond.order != 1 or bond.aromatic:
                 continue
-            b, c = bond
             views = [self._view(number, place, b) for number, place in places]
-            for a in views[0][2]:
-                if a < 0 or a == c or atoms[a].number == 1:
-                    continue
-                for d in views[0][3]:
-                    if d < 0 or d in (b, a) or atoms[d].number == 1:
+            fronts = [a for a in views[0][2] if a != c and self._may_end_at(a, b)]
+            backs = [d for d in views[0][3] if d != b and self._may_end_at(d, c)]
+            around = rings_at[b] & rings_at[c]
+            for a in fronts:
+                common = around & rings_at[a]
+                for d in backs:
+                    if a == d or (common and common & rings_at[d]):
                         continue
-                    if rings_at[a] & rings_at[b] & rings_at[c] & rings_at[d]:
-                        continue
-                    if self._is_pinned(a, b) or self._is_pinned(d, c):
-                        continue
-                    found.append(Path((a, b, c, d), tuple([(n, p, front[a] + back[d]) for n, p, front, back in views])))
+                    offsets = tuple([(n, p, wrap(front[a] + back[d])) for n, p, front, back in views])
+                    found.append(Path((a, b, c, d), offsets))
         return tuple(found)
 
-    def _is_pinned(self, outer: int, ring_atom: int) -> bool:
-        """True when a neighbour is tied back in a three-membered ring, so that it stands at no tetrahedral site."""
+    def _may_end_at(self, outer: int, ring_atom: int) -> bool:
+        """True for a heavy neighbour at a tetrahedral site: one tied back in a three-membered ring stands at none."""
+        if outer < 0 or self.structure.atoms[outer].number == 1:
+            return False
         around = self.structure.neighbours
-        return any(outer in around[n] for n in around[ring_atom] if n != outer)
+        return not self._has_small_rings or not any(outer in around[n] for n in around[ring_atom] if n != outer)
+
+    @cached_property
+    def _has_small_rings(self) -> bool:
+        """True when the molecule has a three-membered ring."""
+        return any(len(ring) == 3 for ring in self.structure.rings)
 
     def _view(self, number: int, place: int, b: int) -> tuple[int, int, dict[int, float], dict[int, float]]:
         """A ring bond seen from one ring: offsets of the neighbours of b and of those of its partner."""
@@ -227,11 +232,10 @@ class Geometry:
         return bool(common)
 
 
-def _sign(order: tuple[int, ...], wanted: tuple[int, ...]) -> int:
-    """+1 when ``wanted`` is an even permutation of ``order``."""
-    places = [order.index(n) for n in wanted]
-    inversions = sum(places[i] > places[j] for i in range(4) for j in range(i + 1, 4))
-    return -1 if inversions % 2 else 1
+def _sign(order: tuple[int, ...], first: int, second: int) -> int:
+    """+1 when moving two neighbours to the front, the others left in their order, is an even permutation."""
+    i, j = order.index(first), order.index(second)
+    return -1 if (i + j - (i < j)) % 2 else 1
 
 
 def neighbour_orders(

@@ -11,8 +11,6 @@ from dataclasses import dataclass
 from functools import cached_property
 from typing import Literal
 
-import networkx as nx
-
 from ringstrain.errors import OutOfScope
 from ringstrain.structure.records import Structure
 
@@ -218,15 +216,22 @@ def _is_chordless(structure: Structure, ring: tuple[int, ...]) -> bool:
 
 def _connected(rings: list[Ring]) -> list[list[Ring]]:
     """Rings that share atoms, put together; each group ordered by lowest atom."""
+    groups = [sorted((rings[i] for i in part), key=lambda r: min(r.atoms)) for part in _touching(rings, least=1)]
+    return sorted(groups, key=lambda group: min(group[0].atoms))
+
+
+def _touching(rings: list[Ring], *, least: int) -> list[set[int]]:
+    """Numbers of rings that hang together, each sharing at least so many atoms with another of its group."""
     if len(rings) < 2:
-        return [rings] if rings else []
+        return [{0}] if rings else []
+    import networkx as nx  # half of the time a short command takes to start, and most rings stand alone
+
     graph: nx.Graph[int] = nx.Graph()
     graph.add_nodes_from(range(len(rings)))
     sets = [frozenset(ring.atoms) for ring in rings]
     for i, first in enumerate(sets):
-        graph.add_edges_from((i, j) for j in range(i) if first & sets[j])
-    groups = [sorted((rings[i] for i in part), key=lambda r: min(r.atoms)) for part in nx.connected_components(graph)]
-    return sorted(groups, key=lambda group: min(group[0].atoms))
+        graph.add_edges_from((i, j) for j in range(i) if len(first & sets[j]) >= least)
+    return list(nx.connected_components(graph))
 
 
 def _fit_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, AtomKind]) -> Ring | Unfit:
@@ -309,14 +314,7 @@ def _is_bridgehead(structure: Structure, atom: int, rings: list[Ring], companion
 
 def _blocks(rings: list[Ring]) -> tuple[tuple[int, ...], ...]:
     """Ring numbers of each fused or bridged block; single shared atoms are spiro and do not fuse."""
-    if len(rings) == 1:
-        return ((0,),)
-    graph: nx.Graph[int] = nx.Graph()
-    graph.add_nodes_from(range(len(rings)))
-    sets = [frozenset(ring.atoms) for ring in rings]
-    for i, first in enumerate(sets):
-        graph.add_edges_from((i, j) for j in range(i) if len(first & sets[j]) > 1)
-    return tuple(sorted(tuple(sorted(part)) for part in nx.connected_components(graph)))
+    return tuple(sorted(tuple(sorted(part)) for part in _touching(rings, least=2)))
 
 
 def atom_kind(structure: Structure, atom: int) -> AtomKind:
