@@ -126,8 +126,8 @@ class Bill:
         count: float = 1.0,
     ) -> None:
         """Put a price on the bill; covering a contact twice is a mistake of ours."""
-        value = None if price.value_kcal is None else round(price.value_kcal, 9)
-        key = (rule, groups, price.row, value)
+        value = price.value_kcal
+        key = (rule, groups, price.row, None if value is None else round(value, 9))
         entry = self.entries.get(key)
         if entry is None:
             entry = self.entries[key] = _Entry(rule, groups, price)

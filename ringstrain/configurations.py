@@ -104,7 +104,7 @@ def _signed_maps(geometry: Geometry, atoms: tuple[int, ...], groups: Groups) -> 
     """How each symmetry of the constitution acts on the signs of the centres."""
     place = {atom: i for i, atom in enumerate(atoms)}
     found = []
-    for images in automorphisms(geometry, groups):
+    for images in (mapping.images for mapping in automorphisms(geometry, groups)):
         for sign in (1, -1):
             if not _groups_agree(geometry, groups, images, sign):
                 continue

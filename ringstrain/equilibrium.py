@@ -127,8 +127,9 @@ def differing_lines(first: Ledger, second: Ledger) -> list[Line]:
     samples: dict[tuple[str, tuple[str, ...], str], Line] = {}
     for sign, ledger in ((1, first), (-1, second)):
         for line in ledger.lines:
-            counts[line.key] = counts.get(line.key, 0.0) + sign * line.count
-            samples[line.key] = line
+            key = line.key
+            counts[key] = counts.get(key, 0.0) + sign * line.count
+            samples[key] = line
     return [samples[key] for key, count in counts.items() if abs(count) > 1e-9]
 
 
@@ -207,9 +208,10 @@ def populations(
     variances = [0.0] * count
     for key, row in counts.items():
         sigma = sigmas[key]
+        if not sigma:
+            continue
         mean = sum([share * own for share, own in zip(shares, row)])
-        for number, own in enumerate(row):
-            variances[number] += ((own - mean) * sigma) ** 2
+        variances = [before + ((own - mean) * sigma) ** 2 for before, own in zip(variances, row)]
     outcome = []
     for share, rest, variance in zip(shares, others, variances, strict=True):
         if not rest:

@@ -166,13 +166,14 @@ class Ledger:
     def of(cls, lines: Iterable[Line]) -> Ledger:
         """The ledger of these lines."""
         kept = tuple(lines)
-        return cls(
-            lines=kept,
-            total_kcal=math.fsum(
-                [line.count * line.price.value_kcal for line in kept if line.price.value_kcal is not None]
-            ),
-            terms=tuple(Term(t.row, t.group, t.coefficient * line.count, t.sigma) for line in kept for t in line.terms),
-        )
+        terms: list[Term] = []
+        values: list[float] = []
+        for line in kept:
+            price, count = line.price, line.count
+            terms.extend(price.terms if count == 1.0 else scaled(price.terms, count))
+            if price.value_kcal is not None:
+                values.append(count * price.value_kcal)
+        return cls(lines=kept, total_kcal=math.fsum(values), terms=tuple(terms))
 
     @property
     def unknown(self) -> tuple[Line, ...]:

@@ -25,7 +25,7 @@ from ringstrain.stereo import resolve
 from ringstrain.structure.read import read
 from ringstrain.structure.records import Configuration, Structure
 from ringstrain.structure.shorthand import PARENT_RINGS
-from ringstrain.symmetry import operations, ring_images
+from ringstrain.symmetry import operations
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -243,21 +243,21 @@ def _slot_images(
     system = geometry.system
     rows: dict[tuple[tuple[int, ...], int], tuple[int, ...]] = {}
     for operation in operations(geometry, groups):  # type: ignore[arg-type]
-        if {operation.images[a] for a in marked} != marked:
+        carried = operation.mapping.images
+        if {carried[a] for a in marked} != marked:
             continue
-        landed = ring_images(geometry, operation.images)
         row = []
         for slot in slots:
             number = system.rings_of[slot.atom][0]
-            image = landed[number]
+            image = operation.mapping.rings[number]
             place = system.rings[number].place(slot.atom)
             face = next(s.face for s in geometry.sites[number][place] if s.neighbour == slot.hidden)
             target_place = image.places[place]
-            target_atom = operation.images[slot.atom]
+            target_atom = carried[slot.atom]
             wanted = operation.sign * image.direction * face
             targets = geometry.sites[image.ring][target_place]
             row.append(_slot_of(slots, target_atom, wanted, targets))
-        rows.setdefault((tuple(row), operation.sign), landed[0].places)
+        rows.setdefault((tuple(row), operation.sign), operation.mapping.rings[0].places)
     ordered = sorted(rows, key=lambda item: (item[1] < 0, item[0]))
     images = np.array([row for row, _ in ordered], dtype=np.intp)
     signs = np.array([sign for _, sign in ordered], dtype=np.int8)

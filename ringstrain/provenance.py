@@ -116,16 +116,18 @@ class Price:
 
 def combined_sigma(terms: Iterable[Term]) -> float:
     """Standard uncertainty of a sum of terms [kcal/mol]: like variables add before they are squared."""
-    totals: dict[tuple[str, str], list[float]] = {}
+    counts: dict[tuple[str, str], float] = {}
+    sigmas: dict[tuple[str, str], float] = {}
     for term in terms:
-        entry = totals.setdefault((term.row, term.group), [0.0, term.sigma])
-        entry[0] += term.coefficient
-    return math.sqrt(sum((count * sigma) ** 2 for count, sigma in totals.values()))
+        key = term.row, term.group
+        counts[key] = counts.get(key, 0.0) + term.coefficient
+        sigmas.setdefault(key, term.sigma)
+    return math.sqrt(sum([(count * sigmas[key]) ** 2 for key, count in counts.items()]))
 
 
 def scaled(terms: Iterable[Term], factor: float) -> tuple[Term, ...]:
     """The same variables counted ``factor`` times [-]."""
-    return tuple(Term(t.row, t.group, t.coefficient * factor, t.sigma) for t in terms)
+    return tuple([Term(t.row, t.group, t.coefficient * factor, t.sigma) for t in terms])
 
 
 def worst_known(kinds: Iterable[KnownBy]) -> KnownBy:

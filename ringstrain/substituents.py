@@ -16,6 +16,8 @@ from ringstrain.tables.groups import Group, is_polar_kind, is_round_kind
 from ringstrain.tables.records import Tables
 
 _HALOGENS = frozenset({9, 17, 35, 53, 85})
+_MAYBE_THREEFOLD = frozenset({"tertiary alkyl", "silyl", "germyl", "stannyl"})
+_ALKYL = frozenset({"primary alkyl", "secondary alkyl", "tertiary alkyl"})
 
 
 def describe_group(structure: Structure, first: int, ring_atom: int, system: frozenset[int], tables: Tables) -> Group:
@@ -51,11 +53,12 @@ def describe_group(structure: Structure, first: int, ring_atom: int, system: fro
         code = hash((8, 2))
         return _group(structure, first, "oxo", code, code, "oxo", tabulated=True)
     code, mirror, members = branch_code(structure, first, ring_atom, system)
-    key = _group_index(tables).get(code) or _group_index(tables).get(mirror)
+    index = _group_index(tables)
+    key = index.get(code) or index.get(mirror)
     kind = classify(structure, first, ring_atom)
     if key is None:
         plain, _, _ = branch_code(structure, first, ring_atom, system, stereo=False, isotopes=False)
-        key = _group_index(tables).get(plain)
+        key = index.get(plain)
     size = next((len(r) for r in structure.rings if first in r and ring_atom in r), 0)
     label = key or (f"{kind} in a {size}-ring" if size else f"{kind} {_formula(structure, members)}")
     return _group(structure, first, label, code, mirror, kind, tabulated=key is not None)
@@ -83,17 +86,37 @@ def _group(
 ) -> Group:
     """The record, with the properties its first atom decides."""
     atom = structure.atoms[first]
+    threefold = kind in _MAYBE_THREEFOLD and _is_threefold(structure, first)
+    halogenated = kind in _ALKYL and _halogens_on(structure, first) >= 2
+    return _shared(
+        label, code, mirror, kind, atom.number, atom.hydrogens > 0, threefold, halogenated, tabulated, ring_atom
+    )
+
+
+@lru_cache(maxsize=4096)
+def _shared(
+    label: str,
+    code: int,
+    mirror: int,
+    kind: str,
+    number: int,
+    bears_hydrogen: bool,
+    threefold: bool,
+    halogenated: bool,
+    tabulated: bool,
+    ring_atom: bool,
+) -> Group:
+    """One shared record for all groups that are alike."""
     return Group(
         key=label,
         code=code,
         mirror_code=mirror,
         kind=kind,
         tabulated=tabulated,
-        round=is_round_kind(kind)
-        or (kind in ("tertiary alkyl", "silyl", "germyl", "stannyl") and _is_threefold(structure, first)),
-        polar=is_polar_kind(kind) or (kind.endswith("alkyl") and _halogens_on(structure, first) >= 2),
-        donor=atom.number in (7, 8) and atom.hydrogens > 0 and kind in ("oxy", "amino", "amido"),
-        acceptor=atom.number in (7, 8) and kind in ("oxy", "amino", "acyloxy", "silyloxy"),
+        round=is_round_kind(kind) or threefold,
+        polar=is_polar_kind(kind) or halogenated,
+        donor=number in (7, 8) and bears_hydrogen and kind in ("oxy", "amino", "amido"),
+        acceptor=number in (7, 8) and kind in ("oxy", "amino", "acyloxy", "silyloxy"),
         ring_atom=ring_atom,
     )
 

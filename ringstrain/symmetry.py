@@ -19,14 +19,31 @@ Groups = dict[tuple[int, int], Group]
 
 
 @dataclass(frozen=True, slots=True)
-class Operation:
-    """One symmetry operation: images of the ring atoms, and +1 (proper) or -1 (improper)."""
+class RingImage:
+    """Where a ring lands: ring number, image of each place, and +1 or -1 as the walk keeps its direction."""
+
+    ring: int
+    places: tuple[int, ...]
+    direction: int
+
+
+@dataclass(frozen=True, slots=True)
+class Automorphism:
+    """Images of the ring atoms, and where each ring lands."""
 
     images: dict[int, int]
+    rings: tuple[RingImage, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Operation:
+    """One symmetry operation: an automorphism, and +1 (proper) or -1 (improper)."""
+
+    mapping: Automorphism
     sign: int
 
 
-def automorphisms(geometry: Geometry, groups: Groups) -> list[dict[int, int]]:
+def automorphisms(geometry: Geometry, groups: Groups) -> list[Automorphism]:
     """Automorphisms of the ring graph that carry every atom onto one of the same kind with like groups.
 
     Parameters
@@ -38,8 +55,8 @@ def automorphisms(geometry: Geometry, groups: Groups) -> list[dict[int, int]]:
 
     Returns
     -------
-    list of dict
-        Images of the ring atoms; the identity is among them.
+    list of Automorphism
+        The identity is among them.
     """
     system, structure = geometry.system, geometry.structure
     members = system.atom_set
@@ -75,8 +92,9 @@ def automorphisms(geometry: Geometry, groups: Groups) -> list[dict[int, int]]:
                 order.append(n)
     found = []
     for images in _extend(order, parent, inner, colours):
-        if _keeps_companions(images, system.companions, members) and _keeps_rings(geometry, images):
-            found.append(images)
+        rings = _ring_images(geometry, images)
+        if rings is not None and _keeps_companions(images, system.companions, members):
+            found.append(Automorphism(images, rings))
             if len(found) >= MAX_OPERATIONS:
                 break
     return found
@@ -107,42 +125,29 @@ def _keeps_companions(images: dict[int, int], companions: tuple[tuple[int, ...],
     return all(frozenset(images[a] for a in part) in shared for part in shared)
 
 
-def _keeps_rings(geometry: Geometry, images: dict[int, int]) -> bool:
-    """True when every six-membered ring lands on one."""
-    known = {frozenset(ring.atoms) for ring in geometry.system.rings}
-    return all(frozenset(images[a] for a in ring.atoms) in known for ring in geometry.system.rings)
-
-
-@dataclass(frozen=True, slots=True)
-class RingImage:
-    """Where a ring lands: ring number, image of each place, and +1 or -1 as the walk keeps its direction."""
-
-    ring: int
-    places: tuple[int, ...]
-    direction: int
-
-
-def ring_images(geometry: Geometry, images: dict[int, int]) -> list[RingImage]:
-    """Image of every ring of a system under an automorphism."""
+def _ring_images(geometry: Geometry, images: dict[int, int]) -> tuple[RingImage, ...] | None:
+    """Where every six-membered ring lands; None when one lands on no ring."""
     numbers = {frozenset(ring.atoms): number for number, ring in enumerate(geometry.system.rings)}
     outcome = []
     for ring in geometry.system.rings:
         landed = [images[a] for a in ring.atoms]
-        number = numbers[frozenset(landed)]
+        number = numbers.get(frozenset(landed))
+        if number is None:
+            return None
         target = geometry.system.rings[number].atoms
-        places = tuple(target.index(a) for a in landed)
+        places = tuple([target.index(a) for a in landed])
         outcome.append(RingImage(number, places, 1 if (places[1] - places[0]) % 6 == 1 else -1))
-    return outcome
+    return tuple(outcome)
 
 
-def maps_configuration(first: Geometry, second: Geometry, groups: Groups, images: dict[int, int], sign: int) -> bool:
+def maps_configuration(first: Geometry, second: Geometry, groups: Groups, mapping: Automorphism, sign: int) -> bool:
     """True when an automorphism of the given sign carries the first configuration onto the second."""
-    for number, landed in enumerate(ring_images(first, images)):
+    for number, landed in enumerate(mapping.rings):
         turn = sign * landed.direction
-        for place in range(6):
+        for place, sites in enumerate(first.sites[number]):
             targets = second.sites[landed.ring][landed.places[place]]
-            for site in first.sites[number][place]:
-                if site.face and not _lands(site, turn, targets, first, second, groups, images, sign):
+            for site in sites:
+                if site.face and not _lands(site, turn, targets, first, second, groups, mapping.images, sign):
                     return False
     return True
 
@@ -158,15 +163,23 @@ def _lands(
     sign: int,
 ) -> bool:
     """True when the site's group stands on the right face of the image atom."""
-    target = next((t for t in targets if t.face == turn * site.face), None)
+    target = _facing(targets, turn * site.face)
     if target is None:
         return False
-    if site.ring_atom in first.system.kinds and first.system.kinds[site.ring_atom] == "inverting":
+    if first.system.kinds[site.ring_atom] == "inverting":
         return True
     if site.neighbour in images:
         return target.neighbour == images[site.neighbour]
     here = _site_code(first, site, groups, sign)
     return here == _site_code(second, target, groups, 1)
+
+
+def _facing(sites: tuple[Site, ...], face: int) -> Site | None:
+    """The site on a face of a ring atom."""
+    for site in sites:
+        if site.face == face:
+            return site
+    return None
 
 
 def _site_code(geometry: Geometry, site: Site, groups: Groups, sign: int) -> int:
@@ -182,32 +195,29 @@ def _site_code(geometry: Geometry, site: Site, groups: Groups, sign: int) -> int
 def operations(geometry: Geometry, groups: Groups) -> list[Operation]:
     """Symmetry operations that leave a configuration as it is (up to handedness)."""
     found: list[Operation] = []
-    for images in automorphisms(geometry, groups):
+    for mapping in automorphisms(geometry, groups):
         found.extend(
-            Operation(images, sign) for sign in (1, -1) if maps_configuration(geometry, geometry, groups, images, sign)
+            [Operation(mapping, s) for s in (1, -1) if maps_configuration(geometry, geometry, groups, mapping, s)]
         )
     return found
 
 
-def same_configuration(first: Geometry, second: Geometry, groups: Groups, maps: list[dict[int, int]]) -> bool:
+def same_configuration(first: Geometry, second: Geometry, groups: Groups, maps: list[Automorphism]) -> bool:
     """True when two configurations of one system are the same compound or mirror images."""
-    return any(maps_configuration(first, second, groups, images, sign) for images in maps for sign in (1, -1))
+    return any(maps_configuration(first, second, groups, mapping, sign) for mapping in maps for sign in (1, -1))
 
 
 def carries(operation: Operation, first: Shapes, second: Shapes) -> bool:
     """True when an operation carries the first state onto the second."""
-    geometry = first.geometry
-    for number, landed in enumerate(ring_images(geometry, operation.images)):
+    for number, landed in enumerate(operation.mapping.rings):
         here, there = first.rings[number], second.rings[landed.ring]
         if here.shape != there.shape:
             return False
-        for bond in range(6):
-            a, b = landed.places[bond], landed.places[(bond + 1) % 6]
-            target = a if landed.direction > 0 else b
-            if abs(there.torsions[target] - operation.sign * here.torsions[bond]) > 1.0:
+        onward = landed.places if landed.direction > 0 else (*landed.places[1:], landed.places[0])
+        for torsion, target in zip(here.torsions, onward, strict=True):
+            if abs(there.torsions[target] - operation.sign * torsion) > 1.0:
                 return False
-    swung, other = set(first.inverted), set(second.inverted)
-    return _same_swings(operation, first, second) if swung or other or _has_inverting(geometry) else True
+    return not _has_inverting(first.geometry) or _same_swings(operation, first, second)
 
 
 def _has_inverting(geometry: Geometry) -> bool:
@@ -216,7 +226,7 @@ def _has_inverting(geometry: Geometry) -> bool:
 
 def _same_swings(operation: Operation, first: Shapes, second: Shapes) -> bool:
     """True when every inverting nitrogen points its group to the image of the same side."""
-    for number, landed in enumerate(ring_images(first.geometry, operation.images)):
+    for number, landed in enumerate(operation.mapping.rings):
         turn = operation.sign * landed.direction
         for place in range(6):
             for site in first.geometry.sites[number][place]:
@@ -226,10 +236,11 @@ def _same_swings(operation: Operation, first: Shapes, second: Shapes) -> bool:
                 if _is_lone_pair(first.geometry, site):
                     continue
                 targets = second.geometry.sites[landed.ring][landed.places[place]]
-                mate = next((t for t in targets if t.face == turn * site.face), None)
+                mate = _facing(targets, turn * site.face)
                 if mate is None or _is_lone_pair(second.geometry, mate):
                     return False
-                if site.neighbour in operation.images and mate.neighbour != operation.images[site.neighbour]:
+                images = operation.mapping.images
+                if site.neighbour in images and mate.neighbour != images[site.neighbour]:
                     return False
     return True
 

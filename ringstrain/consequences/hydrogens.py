@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from ringstrain.contacts import position_of
 from ringstrain.geometry import Geometry, Site
 from ringstrain.results import State, SystemResult
-from ringstrain.symmetry import Operation, operations, ring_images
+from ringstrain.symmetry import Operation, operations
 
 _SHORT = {"axial": "ax", "equatorial": "eq", "isoclinal": "iso"}
 
@@ -135,7 +135,7 @@ def _alike_sets(result: SystemResult, geometry: Geometry, keys: list[tuple[int, 
 def _image(geometry: Geometry, operation: Operation, key: tuple[int, int]) -> tuple[int, int] | None:
     """Where an operation carries a hydrogen."""
     site = sites_of(geometry, key)[0]
-    landed = ring_images(geometry, operation.images)[site.ring]
+    landed = operation.mapping.rings[site.ring]
     face = operation.sign * landed.direction * site.face
     for target in geometry.sites[landed.ring][landed.places[site.place]]:
         if target.face == face and target.neighbour < 0:
