@@ -4,10 +4,9 @@ from __future__ import annotations
 
 import csv
 import gzip
-import io
 import json
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import IO, Any, Protocol
@@ -214,13 +213,21 @@ def _flat(text: str) -> str:
     return " ".join(text.split())
 
 
+class _Echo:
+    """A stream that hands back what is written to it."""
+
+    def write(self, text: str) -> str:
+        return text
+
+
+_quote: Callable[[Sequence[str]], str] = csv.writer(_Echo(), lineterminator="\n").writerow
+
+
 def _separated(cells: Sequence[str], delimiter: str) -> str:
     """One line of a table."""
     if delimiter == "\t":
         return "\t".join(cells) + "\n"
-    buffer = io.StringIO()
-    csv.writer(buffer, lineterminator="\n").writerow(cells)
-    return buffer.getvalue()
+    return _quote(cells)
 
 
 def json_line(row: Row) -> str:

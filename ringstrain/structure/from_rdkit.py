@@ -7,7 +7,7 @@ from typing import Any, Literal
 
 from rdkit import Chem
 
-from ringstrain.structure.records import IMPLICIT, Atom, AtomIndex, Bond, Configuration, Structure
+from ringstrain.structure.records import IMPLICIT, Atom, AtomIndex, Bond, Configuration, Reading, Structure
 
 _NO_TAG = Chem.ChiralType.CHI_UNSPECIFIED
 _SINGLE = Chem.BondType.SINGLE
@@ -23,7 +23,13 @@ _GROUP_WORDS = {
 
 
 def structure_from_rdkit(
-    mol: Any, *, text: str, name: str = "", spans: tuple[tuple[int, int], ...] = (), notes: tuple[str, ...] = ()
+    mol: Any,
+    *,
+    text: str,
+    name: str = "",
+    spans: tuple[tuple[int, int], ...] = (),
+    notes: tuple[str, ...] = (),
+    keep: bool = False,
 ) -> Structure:
     """The frozen record of a sanitised molecule whose chirality tags nobody has cleaned.
 
@@ -37,6 +43,8 @@ def structure_from_rdkit(
         Characters of each RDKit atom in ``text``.
     notes
         Remarks so far.
+    keep
+        True to keep the molecule for writing it again: it must hold nothing but what the records hold.
 
     Returns
     -------
@@ -64,17 +72,19 @@ def structure_from_rdkit(
         tag = a.GetChiralTag()
         configurations.append(None if tag == _NO_TAG else _configuration(a, tag, index))
     bonds, table, adjacency = _bonds(mol, index, len(atoms))
+    parts = (tuple(atoms), bonds, tuple(configurations))
     return Structure(
         text=text,
         name=name,
-        atoms=tuple(atoms),
+        atoms=parts[0],
         bonds=bonds,
         neighbours=tuple([tuple(sorted(n)) for n in adjacency]),
-        configurations=tuple(configurations),
+        configurations=parts[2],
         rings=tuple([tuple([AtomIndex(index[i]) for i in ring]) for ring in mol.GetRingInfo().AtomRings()]),
         fragment=tuple(map(AtomIndex, range(len(atoms)))),
         spans=tuple([span for span, i in zip(spans, index, strict=True) if i >= 0]) if spans else (),
         notes=notes + _enhanced(mol, index),
+        reading=Reading(mol, parts) if keep and len(atoms) == len(index) else None,
         _orders=table,
     )
 

@@ -117,7 +117,13 @@ def _read_smiles(text: str) -> Structure:
         if "/" in core or "\\" in core:
             Chem.SetBondStereoFromDirections(mol)
     spans = tuple([found.span() for found in _ATOM_TOKEN.finditer(core)])
-    return structure_from_rdkit(mol, text=text, name=name, spans=spans if len(spans) == mol.GetNumAtoms() else ())
+    return structure_from_rdkit(
+        mol,
+        text=text,
+        name=name,
+        spans=spans if len(spans) == mol.GetNumAtoms() else (),
+        keep=not extended and ":" not in core,  # neither atom maps nor CXSMILES marks, which would be written again
+    )
 
 
 @lru_cache(maxsize=2)

@@ -6,8 +6,9 @@ hydrogens are folded into their atom, isotopic ones keep their place.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, field
-from typing import Literal, NewType
+from typing import Any, Literal, NewType
 
 AtomIndex = NewType("AtomIndex", int)
 #: Stands for a hydrogen or lone pair in a neighbour list; a second one on the same atom is ``SECOND_IMPLICIT``.
@@ -109,6 +110,37 @@ def permutation_sign(first: tuple[int, ...], second: tuple[int, ...]) -> int:
     return sign
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class Reading:
+    """What a structure was read from, kept so that writing it need not build the molecule again.
+
+    It serves only the structure that was read: one edited from it has other parts.  A copy that travels to another
+    process or is pickled arrives without it.
+
+    Attributes
+    ----------
+    molecule
+        The molecule of the library that read it.
+    parts
+        Atoms, bonds and configurations it stands for.
+    """
+
+    molecule: Any
+    parts: tuple[object, ...]
+
+    def fits(self, structure: Structure) -> bool:
+        """True for the structure that was read, whatever its name and remarks."""
+        atoms, bonds, configurations = self.parts
+        return structure.atoms is atoms and structure.bonds is bonds and structure.configurations is configurations
+
+    def __reduce__(self) -> tuple[Callable[[], None], tuple[()]]:
+        return _forgotten, ()
+
+
+def _forgotten() -> None:
+    """What is left of a reading in another process."""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Structure:
     """A molecule as read.
@@ -133,6 +165,8 @@ class Structure:
         Characters of the input each atom stands at, when the input is a SMILES.
     notes
         What the reader should know about the reading.
+    reading
+        The molecule it was read from, while that is at hand.
     """
 
     text: str
@@ -145,6 +179,7 @@ class Structure:
     fragment: tuple[AtomIndex, ...]
     spans: tuple[tuple[int, int], ...] = ()
     notes: tuple[str, ...] = ()
+    reading: Reading | None = field(default=None, repr=False, compare=False)
     _orders: dict[tuple[int, int], Bond] = field(default_factory=dict, repr=False, compare=False)
 
     def bond(self, a: int, b: int) -> Bond:

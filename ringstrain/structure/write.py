@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from functools import lru_cache
 from typing import Any
 
@@ -92,18 +93,29 @@ def write_smiles(structure: Structure, *, canonical: bool = True) -> str:
         The SMILES.
     """
     with rdBase.BlockLogs():
-        mol = _assembled(structure)
-        _drop_idle_marks(mol, [i for i, given in enumerate(structure.configurations) if given is not None])
+        reading = structure.reading
+        mol = Chem.Mol(reading.molecule) if reading is not None and reading.fits(structure) else _assembled(structure)
+        _drop_idle_marks(mol, structure)
         text: str = Chem.MolToSmiles(mol, canonical=canonical)
     return text
 
 
-def _drop_idle_marks(mol: Any, marked: list[int]) -> None:
+def _drop_idle_marks(mol: Any, structure: Structure) -> None:
     """Clear marks at atoms that cannot be stereocentres; dependent ring centres keep theirs."""
-    if marked:
+    marked = [i for i, given in enumerate(structure.configurations) if given is not None]
+    ranks = Chem.CanonicalRankAtoms(mol, breakTies=False, includeChirality=False) if marked else ()
+    if not all(_is_plain_centre(structure, i, ranks) for i in marked):
         copy = Chem.Mol(mol)  # the search leaves ranks behind that would change the canonical order
         possible = {found.centeredOn for found in Chem.FindPotentialStereo(copy, cleanIt=False, flagPossible=True)}
         for index in marked:
             if index not in possible:
                 mol.GetAtomWithIdx(index).SetChiralTag(_UNMARKED)
     mol.SetIntProp("_StereochemDone", 1)
+
+
+def _is_plain_centre(structure: Structure, atom: int, ranks: Sequence[int]) -> bool:
+    """True for a carbon with four different ligands, which is a stereocentre whatever the rest looks like."""
+    record, around = structure.atoms[atom], structure.neighbours[atom]
+    if record.number != 6 or record.hydrogens > 1 or len(around) + record.hydrogens != 4:
+        return False
+    return len({ranks[n] for n in around}) == len(around)
