@@ -227,6 +227,8 @@ def _form_sets(priced: Sequence[Detail], copies: Sequence[int | None]) -> list[i
 def _substituted_rings(shapes: Shapes) -> tuple[int, ...]:
     """Rings that bear a substituent or are fused; all of them when none does."""
     geometry = shapes.geometry
+    if len(geometry.system.rings) == 1:
+        return (0,)
     members = geometry.system.atom_set
     bearing = []
     fused = {number for block in geometry.system.blocks if len(block) > 1 for number in block}
@@ -244,8 +246,8 @@ def _substituted_rings(shapes: Shapes) -> tuple[int, ...]:
 def _shares(priced: Sequence[Detail], sets: Sequence[int], book: PriceBook) -> list[Population | None]:
     """Population of each state; none when an unpriced contact decides."""
     ledgers = [detail.ledger for detail in priced]
-    first = sorted((*line.key, line.count) for line in ledgers[0].unknown)
-    if any(sorted((*line.key, line.count) for line in ledger.unknown) != first for ledger in ledgers[1:]):
+    unpriced = [sorted([(*line.key, line.count) for line in ledger.unknown]) for ledger in ledgers]
+    if any(unpriced) and any(lines != unpriced[0] for lines in unpriced):
         return [None] * len(priced)
     return list(populations(ledgers, sets, book.conditions.temperature_K, book.tables.model_terms))
 

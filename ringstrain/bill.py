@@ -32,11 +32,14 @@ class Parties:
         Name of each ring.
     book
         Prices under the asked conditions.
+    has_dipoles
+        True when there are two halogens, which may face each other across a ring.
     """
 
     groups: GroupMap
     names: tuple[RingName, ...]
     book: PriceBook
+    has_dipoles: bool = False
     _places: dict[tuple[int, int], RingPlace] = field(default_factory=dict)
     _prices: dict[tuple[int, int, int], Price] = field(default_factory=dict)
 
@@ -62,9 +65,9 @@ class Parties:
 def parties_of(geometry: Geometry, groups: GroupMap, book: PriceBook) -> Parties:
     """Names and prices for the states of one ring system."""
     names = tuple(
-        name_ring(geometry.structure, geometry.system, number) for number in range(len(geometry.system.rings))
+        [name_ring(geometry.structure, geometry.system, number) for number in range(len(geometry.system.rings))]
     )
-    return Parties(groups, names, book)
+    return Parties(groups, names, book, sum([group.kind == "halogen" for group in groups.values()]) > 1)
 
 
 def _ring_place(geometry: Geometry, name: RingName, ring: int, atom: int) -> RingPlace:
@@ -168,10 +171,11 @@ def pair_of(first: str, second: str) -> tuple[str, str]:
 def shared_ring(geometry: Geometry, *atoms: int) -> int | None:
     """A six-membered ring that holds all these atoms."""
     rings_of = geometry.system.rings_of
-    for number in rings_of.get(atoms[0], ()):
-        if all(number in rings_of.get(atom, ()) for atom in atoms[1:]):
-            return number
-    return None
+    common = rings_of.get(atoms[0], ())
+    for atom in atoms[1:]:
+        here = rings_of.get(atom, ())
+        common = common if common == here else tuple([number for number in common if number in here])
+    return common[0] if common else None
 
 
 def axial_sites(facts: Survey) -> tuple[Placed, ...]:

@@ -154,7 +154,7 @@ def charge_allylic(geometry: Geometry, facts: Survey, parties: Parties, bill: Bi
 
 def charge_across(state: Shapes, facts: Survey, parties: Parties, bill: Bill) -> None:
     """Two axial halogens on opposite atoms and faces of a chair: their antiparallel dipoles attract."""
-    if sum(group.kind == "halogen" for group in parties.groups.values()) < 2:
+    if not parties.has_dipoles:
         return
     axial = {(p.site.ring, p.site.place): p.site for p in axial_sites(facts)}
     for (ring, place), first in axial.items():

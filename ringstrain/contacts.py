@@ -71,7 +71,7 @@ class Survey:
 
     def of_kind(self, kind: ContactKind) -> tuple[Contact, ...]:
         """Contacts of one kind."""
-        return tuple(c for c in self.contacts if c.kind == kind)
+        return tuple([c for c in self.contacts if c.kind == kind])
 
 
 def occupant_of(structure: Structure, site: Site) -> Occupant:

@@ -97,6 +97,8 @@ def weights(energies_kcal: Sequence[float], temperature_K: float) -> list[float]
 def mixture_energy(energies_kcal: Sequence[float], temperature_K: float) -> float:
     """Free energy of a set of states, -RT ln of the sum of their Boltzmann factors [kcal/mol]."""
     lowest = min(energies_kcal)
+    if len(energies_kcal) == 1:
+        return lowest
     rt = R_KCAL * temperature_K
     return lowest - rt * math.log(math.fsum(math.exp(-(e - lowest) / rt) for e in energies_kcal))
 

@@ -178,7 +178,7 @@ class Ledger:
     @property
     def unknown(self) -> tuple[Line, ...]:
         """Lines without a price."""
-        return tuple(line for line in self.lines if line.value_kcal is None)
+        return tuple([line for line in self.lines if line.price.value_kcal is None])
 
     @property
     def known_by(self) -> KnownBy:

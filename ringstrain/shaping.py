@@ -70,9 +70,7 @@ def find_states(resolved: Resolved, groups: GroupMap, book: PriceBook) -> list[P
     sugar = find_sugar(geometry, parties) if book.conditions.medium == "protic" else None
     if sugar is not None:
         return _price_sugar(options, parties, sugar)
-    chairs = [
-        _price(Shapes(o, s.rings, i), parties) for o, i, b in options for s in combine_blocks(o, list(map(list, b)))
-    ]
+    chairs = [_price(state, parties) for option, i, blocks in options for state in combine_blocks(option, blocks, i)]
     chairs = [item for item in chairs if not _is_blocked(item[1], geometry)] or chairs
     strained = frozenset(
         number
@@ -91,8 +89,7 @@ def _price_sugar(
     """Chairs of a pyranose or cyclitol in water, by the closed set."""
     priced = []
     for option, inverted, blocks in options:
-        for shapes in combine_blocks(option, [list(block) for block in blocks]):
-            state = Shapes(option, shapes.rings, inverted)
+        for state in combine_blocks(option, blocks, inverted):
             facts = survey(state)
             priced.append((state, facts, sugar_ledger(state, facts, parties, sugar)))
     return priced
@@ -137,7 +134,7 @@ def _with_twists(
                 mixed = [list(twisted if i == index else other) for i, other in enumerate(blocks)]
                 if len(chairs) + len(twists) + _count(tuple(map(tuple, mixed))) > MAX_STATES:
                     return chairs
-                twists.extend(Shapes(option, s.rings, inverted) for s in combine_blocks(option, mixed))
+                twists.extend(combine_blocks(option, mixed, inverted))
     if not twists:
         return chairs
     twisting = frozenset(

@@ -6,6 +6,7 @@ they share within 35 degrees; a search ring by ring finds the few combinations t
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -229,8 +230,10 @@ def _same_side(geometry: Geometry, number: int, companion: tuple[int, ...]) -> b
     return len(faces) < 2
 
 
-def combine_blocks(geometry: Geometry, per_block: list[list[dict[int, RingShape]]]) -> list[Shapes]:
-    """States of the system: the product over its blocks.
+def combine_blocks(
+    geometry: Geometry, per_block: Sequence[Sequence[dict[int, RingShape]]], inverted: tuple[int, ...] = ()
+) -> list[Shapes]:
+    """States of the system with these nitrogens inverted: the product over its blocks.
 
     Raises
     ------
@@ -250,4 +253,4 @@ def combine_blocks(geometry: Geometry, per_block: list[list[dict[int, RingShape]
     for options in per_block:
         merged = [{**left, **right} for left in merged for right in options]
     count = len(geometry.system.rings)
-    return [Shapes(geometry, tuple(chosen[n] for n in range(count))) for chosen in merged]
+    return [Shapes(geometry, tuple([chosen[n] for n in range(count)]), inverted) for chosen in merged]

@@ -119,6 +119,13 @@ class PriceBook:
 
     def fusion(self, a: Group, d: Group) -> Price:
         """Ring-fusion gauche-butane between two ring atoms; with a heteroatom the mean of the two half-A's."""
+        memory_key = ("f", a.key, d.key, a.kind, d.kind)
+        price = self._memory.get(memory_key)
+        if price is None:
+            price = self._remember(memory_key, self._fusion(a, d))
+        return price
+
+    def _fusion(self, a: Group, d: Group) -> Price:
         if a.kind.endswith("alkyl") and d.kind.endswith("alkyl"):
             claim = self.tables.row("gauche/gauche-butane-ring-fusion")
             sigma = claim.uncertainty or 0.0
