@@ -118,10 +118,9 @@ def survey(state: Shapes) -> Survey:
     """
     geometry = state.geometry
     placed = _placed(state)
-    gauche = _gauche(state)
+    gauche, eclipsed = _close_paths(state)
     contacts = [Contact("gauche", path.atoms, torsion) for path, torsion in gauche]
-    if any(ring.shape != "chair" for ring in state.rings):
-        contacts.extend(_eclipsed(state))
+    contacts.extend(eclipsed)
     contacts.extend(_syn_axial(state, placed))
     if len(geometry.system.rings) > 1:
         contacts.extend(_peri(geometry, gauche))
@@ -171,16 +170,21 @@ def _is_set_aside(geometry: Geometry, site: Site) -> bool:
     return site.neighbour < 0 or geometry.structure.bond(site.ring_atom, site.neighbour).order == 2
 
 
-def _gauche(state: Shapes) -> list[tuple[Path, float]]:
-    """Gauche paths with their torsions."""
-    found = []
+def _close_paths(state: Shapes) -> tuple[list[tuple[Path, float]], list[Contact]]:
+    """Gauche paths with their torsions, and outside groups that eclipse each other in boats and half-chairs."""
+    gauche: list[tuple[Path, float]] = []
+    eclipsed: list[Contact] = []
     rings = state.rings
+    all_chairs = all([ring.shape == "chair" for ring in rings])  # where a group may face only the plane of an sp2 atom
+    members = state.geometry.system.atom_set
     low, high = GAUCHE
     for path in state.geometry.paths:
         torsion = _torsion_of(rings, path)
         if low <= torsion < high or -high < torsion <= -low:
-            found.append((path, torsion))
-    return found
+            gauche.append((path, torsion))
+        elif not all_chairs and -low < torsion < low and path.atoms[0] not in members and path.atoms[3] not in members:
+            eclipsed.append(Contact("eclipsed", path.atoms, torsion))
+    return gauche, eclipsed
 
 
 def _torsion_of(rings: tuple[RingShape, ...], path: Path) -> float:
@@ -190,19 +194,6 @@ def _torsion_of(rings: tuple[RingShape, ...], path: Path) -> float:
     if len(path.views) > 1:
         return mean_angle([torsion, *[rings[n].torsions[p] + o for n, p, o in path.views[1:]]])
     return torsion - 360.0 if torsion > 180.0 else torsion + 360.0 if torsion <= -180.0 else torsion
-
-
-def _eclipsed(state: Shapes) -> list[Contact]:
-    """Outside groups that eclipse each other across a ring bond; only boats and half-chairs have them."""
-    members = state.geometry.system.atom_set
-    found = []
-    for path in state.geometry.paths:
-        if path.atoms[0] in members or path.atoms[3] in members:
-            continue
-        torsion = _torsion_of(state.rings, path)
-        if abs(torsion) < GAUCHE[0]:
-            found.append(Contact("eclipsed", path.atoms, torsion))
-    return found
 
 
 def _syn_axial(state: Shapes, placed: tuple[Placed, ...]) -> list[Contact]:

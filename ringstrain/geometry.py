@@ -9,7 +9,7 @@ bond behind - 120 face with the ring path behind.  A site on a planar atom stand
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 from itertools import product
 
 from ringstrain.ringgraph import RingSystem
@@ -71,6 +71,12 @@ class Site:
         return -120.0 * self.face if self.face else 180.0
 
 
+@lru_cache(maxsize=16384)
+def _site(ring_atom: int, ring: int, place: int, neighbour: int, face: int) -> Site:
+    """One shared record for a place that many molecules have."""
+    return Site(ring_atom, ring, place, neighbour, face)
+
+
 @dataclass(frozen=True, slots=True)
 class Path:
     """A heavy-atom path a-b-c-d across a ring bond, with what it takes to know its torsion.
@@ -118,7 +124,7 @@ class Geometry:
     def sites(self) -> tuple[tuple[tuple[Site, ...], ...], ...]:
         """Sites by ring and place: two on a tetrahedral atom, one or none on a planar one."""
         return tuple(
-            tuple(self._sites_at(number, place) for place in range(6)) for number in range(len(self.system.rings))
+            [tuple([self._sites_at(number, place) for place in range(6)]) for number in range(len(self.system.rings))]
         )
 
     def _sites_at(self, number: int, place: int) -> tuple[Site, ...]:
@@ -127,13 +133,13 @@ class Geometry:
         order = self.orders.get(atom)
         if order is None:
             outer = [n for n in self.structure.neighbours[atom] if n not in (behind, ahead)]
-            sites = [Site(atom, number, place, int(n), 0) for n in outer]
+            sites = [_site(atom, number, place, int(n), 0) for n in outer]
             if not sites and self.structure.atoms[atom].hydrogens:
-                sites = [Site(atom, number, place, IMPLICIT, 0)]
+                sites = [_site(atom, number, place, IMPLICIT, 0)]
             return tuple(sites)
         first, second = [n for n in order if n != behind and n != ahead]
         sign = _sign(order, ahead, behind)
-        return Site(atom, number, place, first, sign), Site(atom, number, place, second, -sign)
+        return _site(atom, number, place, first, sign), _site(atom, number, place, second, -sign)
 
     def offset_ahead(self, number: int, place: int, neighbour: int) -> float:
         """Offset of the torsion from a neighbour of the atom at ``place`` along the bond ahead [degree]."""
@@ -199,17 +205,17 @@ class Geometry:
         """A ring bond seen from one ring: offsets of the neighbours of b and of those of its partner."""
         ring = self.system.rings[number].atoms
         following = (place + 1) % 6
-        ahead = dict(self._ends(number, place, ahead=True))
-        behind = dict(self._ends(number, following, ahead=False))
+        ahead = self._ends(number, place, ahead=True)
+        behind = self._ends(number, following, ahead=False)
         return (number, place, ahead, behind) if ring[place] == b else (number, place, behind, ahead)
 
-    def _ends(self, number: int, place: int, *, ahead: bool) -> list[tuple[int, float]]:
+    def _ends(self, number: int, place: int, *, ahead: bool) -> dict[int, float]:
         """Neighbours of a ring atom but the one across the bond, with their offsets along it [degree]."""
         ring = self.system.rings[number].atoms
         back = ring[place - 1] if ahead else ring[(place + 1) % 6]
-        ends = [(back, 0.0)]
+        ends = {back: 0.0}
         for site in self.sites[number][place]:
-            ends.append((site.neighbour, site.offset_ahead if ahead else site.offset_behind))
+            ends[site.neighbour] = site.offset_ahead if ahead else site.offset_behind
         return ends
 
     @cached_property

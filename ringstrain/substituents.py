@@ -53,12 +53,16 @@ def describe_group(structure: Structure, first: int, ring_atom: int, system: fro
         code = hash((8, 2))
         return _group(structure, first, "oxo", code, code, "oxo", tabulated=True)
     code, mirror, members = branch_code(structure, first, ring_atom, system)
-    index = _group_index(tables)
+    index, known = _group_index(tables)
     key = index.get(code) or index.get(mirror)
+    if key is not None and (code, mirror) in known:
+        return known[code, mirror]
     kind = classify(structure, first, ring_atom)
-    if key is None:
-        plain, _, _ = branch_code(structure, first, ring_atom, system, stereo=False, isotopes=False)
-        key = index.get(plain)
+    if key is not None:
+        known[code, mirror] = group = _group(structure, first, key, code, mirror, kind, tabulated=True)
+        return group
+    plain, _, _ = branch_code(structure, first, ring_atom, system, stereo=False, isotopes=False)
+    key = index.get(plain)
     size = next((len(r) for r in structure.rings if first in r and ring_atom in r), 0)
     label = key or (f"{kind} in a {size}-ring" if size else f"{kind} {_formula(structure, members)}")
     return _group(structure, first, label, code, mirror, kind, tabulated=key is not None)
@@ -333,15 +337,15 @@ class _Probe:
 
 
 @lru_cache(maxsize=8)
-def _group_index(tables: Tables) -> dict[int, str]:
-    """Table key of every tabulated group by its code."""
+def _group_index(tables: Tables) -> tuple[dict[int, str], dict[tuple[int, int], Group]]:
+    """Table key of every tabulated group by its code, and the records of those met so far."""
     index: dict[int, str] = {}
     for entry in tables.groups:
         probe = _probe(entry.smiles)
         code, mirror, _ = branch_code(probe.structure, probe.first, probe.dummy, frozenset((probe.dummy,)))
         index.setdefault(code, entry.key)
         index.setdefault(mirror, entry.key)
-    return index
+    return index, {}
 
 
 def _probe(smiles: str) -> _Probe:

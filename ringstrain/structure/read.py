@@ -18,6 +18,7 @@ from ringstrain.structure.shorthand import is_shorthand, read_shorthand
 MAX_CHARACTERS = 100_000
 MAX_ATOMS = 500
 _ATOM_TOKEN = re.compile(r"\[[^\]]*\]|Br|Cl|[BCNOPSFI*]|[bcnops]")
+_IN_BRACKETS = re.compile(r"\[[^\]]*\]")
 _BAD_CHARACTER = re.compile(r"[^A-Za-z0-9@+\-\[\]()=#$:.%/\\*~>{}|,^&;!<'\"_?]")
 
 
@@ -139,12 +140,11 @@ def _parser(extended: bool) -> Any:
 
 def _refuse_odd(core: str, text: str) -> None:
     """Refuse reactions and characters no SMILES has."""
-    bare = re.sub(r"\[[^\]]*\]", "", core).replace("->", "").replace("<-", "")
-    if ">" in bare:
+    if ">" in core and ">" in _IN_BRACKETS.sub("", core).replace("->", "").replace("<-", ""):
         raise InputError(
             "This is a reaction SMILES.", "Give one molecule: the starting material or the product.", text=text
         )
-    wild = re.sub(r"\[[^\]]*\]", lambda m: "_" * len(m.group()), core).find("~")
+    wild = _blanked(core).find("~") if "~" in core else -1
     if wild >= 0:
         raise InputError(
             "The bond '~' stands for any bond.", "Write the bond that is there.", span=(wild, wild + 1), text=text
@@ -157,6 +157,11 @@ def _refuse_odd(core: str, text: str) -> None:
             span=bad.span(),
             text=text,
         )
+
+
+def _blanked(core: str) -> str:
+    """A SMILES with its bracket atoms blanked out, each character where it was."""
+    return _IN_BRACKETS.sub(lambda found: "_" * len(found.group()), core)
 
 
 def _syntax_error(core: str, text: str) -> ParseError:
@@ -208,7 +213,7 @@ def _syntax_error(core: str, text: str) -> ParseError:
 
 def _open_ring_bond(core: str) -> tuple[int, int] | None:
     """Where the first unpaired ring-closure number stands."""
-    bare = re.sub(r"\[[^\]]*\]", lambda m: "_" * len(m.group()), core)
+    bare = _blanked(core)
     seen: dict[str, tuple[int, int]] = {}
     for found in re.finditer(r"%\d\d|%\(\d+\)|\d", bare):
         number = found.group().lstrip("%").strip("()").lstrip("0") or "0"
