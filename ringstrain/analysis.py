@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from operator import neg
 
 from ringstrain.billing import GroupMap
 from ringstrain.contacts import ContactKind
@@ -40,6 +41,9 @@ _COUNTS: dict[str, ContactKind] = {
     "eclipsed": "eclipsed",
     "transannular": "transannular",
 }
+
+
+_NO_CONTACTS = dict.fromkeys(_COUNTS.values(), 0)
 
 
 def analyze(
@@ -175,7 +179,7 @@ def _sorted_forms(
 
 def _shape_key(shapes: Shapes) -> tuple[object, ...]:
     """A fixed order among states of equal energy."""
-    return tuple((ring.shape, tuple(-t for t in ring.torsions)) for ring in shapes.rings), shapes.inverted
+    return tuple([(ring.shape, *map(neg, ring.torsions)) for ring in shapes.rings]), shapes.inverted
 
 
 def _letter(number: int) -> str:
@@ -291,19 +295,19 @@ def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Popul
             elif position == "equatorial":
                 equatorial.add(site.neighbour)
     ledger = detail.ledger
-    tally = dict.fromkeys(_COUNTS.values(), 0)
+    tally = dict(_NO_CONTACTS)
     for contact in detail.facts.contacts:
         tally[contact.kind] += 1
     nitrogen = _nitrogen(detail)
     return State(
         id=id,
-        shapes=tuple(ring.shape for ring in detail.shapes.rings),
+        shapes=tuple([ring.shape for ring in detail.shapes.rings]),
         axial=tuple(sorted(axial)),
         equatorial=tuple(sorted(equatorial)),
-        axial_H=tuple(atom for atom, position, bare in nitrogen if position == "axial" and bare),
-        nitrogen=tuple((atom, position) for atom, position, _ in nitrogen),
+        axial_H=tuple([atom for atom, position, bare in nitrogen if position == "axial" and bare]),
+        nitrogen=tuple([(atom, position) for atom, position, _ in nitrogen]),
         equivalent_to=equivalent_to,
-        counts=tuple((name, tally[kind]) for name, kind in _COUNTS.items()),
+        counts=tuple([(name, tally[kind]) for name, kind in _COUNTS.items()]),
         energy_kcal=ledger.total_kcal,
         uncertainty_kcal=combined_sigma(ledger.terms),
         lower_bound=bool(ledger.unknown),

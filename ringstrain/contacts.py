@@ -175,7 +175,7 @@ def _close_paths(state: Shapes) -> tuple[list[tuple[Path, float]], list[Contact]
     gauche: list[tuple[Path, float]] = []
     eclipsed: list[Contact] = []
     rings = state.rings
-    all_chairs = all([ring.shape == "chair" for ring in rings])  # where a group may face only the plane of an sp2 atom
+    all_chairs = all(ring.shape == "chair" for ring in rings)  # a group faces no other there, but an sp2 plane
     members = state.geometry.system.atom_set
     low, high = GAUCHE
     for path in state.geometry.paths:

@@ -190,10 +190,11 @@ def regime_of(lines: Iterable[Line]) -> Regime:
     """The least certain kind of line among these."""
     worst = 0
     for line in lines:
-        if line.polar and not line.row.startswith("avalues/"):
+        price = line.price
+        if price.polar and not price.row.startswith("avalues/"):
             return "polar"
-        if line.estimated:
-            worst = max(worst, 2)
-        elif line.rule in _PAIR_RULES:
-            worst = max(worst, 1)
+        if price.estimated:
+            worst = 2
+        elif not worst and line.rule in _PAIR_RULES:
+            worst = 1
     return REGIMES[worst]

@@ -61,15 +61,18 @@ def automorphisms(geometry: Geometry, groups: Groups) -> list[Automorphism]:
     system, structure = geometry.system, geometry.structure
     members = system.atom_set
     inner = {a: [int(n) for n in structure.neighbours[a] if n in members] for a in system.atoms}
-    colours: dict[int, tuple[object, ...]] = {}
+    colours: dict[int, int] = {}
+    classes: dict[tuple[object, ...], int] = {}
     for a in system.atoms:
         record = structure.atoms[a]
         outer = sorted(
-            (structure.bond(a, n).order, min(groups[(a, n)].code, groups[(a, n)].mirror_code))
-            for n in structure.neighbours[a]
-            if n not in members
+            [
+                (structure.bond(a, n).order, min(groups[(a, n)].code, groups[(a, n)].mirror_code))
+                for n in structure.neighbours[a]
+                if n not in members
+            ]
         )
-        colours[a] = (
+        colour = (
             record.number,
             record.charge,
             record.isotope,
@@ -77,12 +80,11 @@ def automorphisms(geometry: Geometry, groups: Groups) -> list[Automorphism]:
             system.kinds[a],
             len(inner[a]),
             tuple(outer),
-            sum(a in companion for companion in system.companions),
+            sum([a in companion for companion in system.companions]),
         )
-    population: dict[object, int] = {}
-    for colour in colours.values():
-        population[colour] = population.get(colour, 0) + 1
-    root = min(system.atoms, key=lambda a: (population[colours[a]], a))
+        colours[a] = classes.setdefault(colour, len(classes))
+    every = list(colours.values())
+    root = min(system.atoms, key=lambda a: (every.count(colours[a]), a))
     order = [root]
     parent: dict[int, int] = {}
     for a in order:
@@ -101,22 +103,28 @@ def automorphisms(geometry: Geometry, groups: Groups) -> list[Automorphism]:
 
 
 def _extend(
-    order: list[int], parent: dict[int, int], inner: dict[int, list[int]], colours: dict[int, tuple[object, ...]]
+    order: list[int], parent: dict[int, int], inner: dict[int, list[int]], colours: dict[int, int]
 ) -> Iterator[dict[int, int]]:
     """Depth-first search over images, neighbours onto neighbours."""
-    stack: list[dict[int, int]] = [{order[0]: a} for a in inner if colours[a] == colours[order[0]]][::-1]
+    place = {atom: i for i, atom in enumerate(order)}
+    steps = [
+        (place[parent[a]], [place[n] for n in inner[a] if place[n] < place[a] and n != parent[a]], colours[a])
+        for a in order
+        if a in parent
+    ]
+    stack: list[tuple[int, ...]] = []
+    stack.extend([(a,) for a in inner if colours[a] == colours[order[0]]][::-1])
     while stack:
         images = stack.pop()
         if len(images) == len(order):
-            yield images
+            yield dict(zip(order, images, strict=True))
             continue
-        atom = order[len(images)]
-        used = set(images.values())
-        for target in inner[images[parent[atom]]]:
-            if target in used or colours[target] != colours[atom]:
+        came_from, earlier, colour = steps[len(images) - 1]
+        for target in inner[images[came_from]]:
+            if colours[target] != colour or target in images:
                 continue
-            if all(images[n] in inner[target] for n in inner[atom] if n in images):
-                stack.append({**images, atom: target})
+            if not earlier or all(images[i] in inner[target] for i in earlier):
+                stack.append((*images, target))
 
 
 def _keeps_companions(images: dict[int, int], companions: tuple[tuple[int, ...], ...], members: frozenset[int]) -> bool:
