@@ -82,25 +82,25 @@ def occupant_of(structure: Structure, site: Site) -> Occupant:
 
 
 @lru_cache(maxsize=256)
-def _positions(torsions: Torsions) -> tuple[tuple[Position, Position], ...]:
-    """Position of the site of face +1 and of face -1 on each ring atom of a shape."""
-    table: list[tuple[Position, Position]] = []
+def _positions(torsions: Torsions) -> tuple[tuple[Position, Position, Position], ...]:
+    """Position of the site of face 0, +1 and -1 (in this order, so that a face is an index) on each atom of a shape."""
+    table: list[tuple[Position, Position, Position]] = []
     for place in range(6):
         ahead, behind = torsions[place], torsions[place - 1]
         up = abs(wrap(ahead + 120.0)) + abs(wrap(behind - 120.0))
         down = abs(wrap(ahead - 120.0)) + abs(wrap(behind + 120.0))
         if abs(up - down) < 1.0:
-            table.append(("isoclinal", "isoclinal"))
+            table.append(("equatorial", "isoclinal", "isoclinal"))
+        elif up < down:
+            table.append(("equatorial", "axial", "equatorial"))
         else:
-            table.append(("axial", "equatorial") if up < down else ("equatorial", "axial"))
+            table.append(("equatorial", "equatorial", "axial"))
     return tuple(table)
 
 
 def position_of(state: Shapes, site: Site) -> Position:
     """Axial is the site with the smaller sum of its two ring torsions; equal sums are isoclinal."""
-    if not site.face:
-        return "equatorial"
-    return _positions(state.rings[site.ring].torsions)[site.place][0 if site.face > 0 else 1]
+    return _positions(state.rings[site.ring].torsions)[site.place][site.face]
 
 
 def survey(state: Shapes) -> Survey:
@@ -133,9 +133,8 @@ def _placed(state: Shapes) -> tuple[Placed, ...]:
     found = []
     for number, cards in enumerate(_cards(state.geometry)):
         table = _positions(state.rings[number].torsions)
-        for site, occupant, made in cards:
-            face = site.face
-            position: Position = "equatorial" if not face else table[site.place][0 if face > 0 else 1]
+        for site, place, face, occupant, made in cards:
+            position = table[place][face]
             card = made.get(position)
             if card is None:
                 card = made[position] = Placed(site, position, occupant)
@@ -143,15 +142,15 @@ def _placed(state: Shapes) -> tuple[Placed, ...]:
     return tuple(found)
 
 
-_Card = tuple[Site, Occupant, dict[Position, Placed]]
+_Card = tuple[Site, int, int, Occupant, dict[Position, Placed]]
 
 
 @lru_cache(maxsize=4)
 def _cards(geometry: Geometry) -> list[list[_Card]]:
-    """For each ring its sites, what stands there, and the records made so far; states share them."""
+    """For each ring its sites with place and face, what stands there, and the records that states share."""
     return [
         [
-            (site, occupant_of(geometry.structure, site), {})
+            (site, site.place, site.face, occupant_of(geometry.structure, site), {})
             for sites in ring
             for site in sites
             if not _is_set_aside(geometry, site)
