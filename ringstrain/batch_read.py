@@ -13,7 +13,7 @@ from typing import IO, TextIO
 
 from ringstrain.batch_rows import BatchRecord
 from ringstrain.errors import InputError
-from ringstrain.structure.shorthand import is_shorthand
+from ringstrain.structure.shorthand import is_remark, is_shorthand
 
 SUFFIXES = (".smi", ".csv", ".tsv", ".sdf")
 _SMILES_NAMES = ("smiles", "structure", "input", "canonical_smiles", "mol")
@@ -103,7 +103,9 @@ class RecordReader:
         """Records of a table with a header."""
         counted = _Counted(stream)
         rows = csv.reader(counted, delimiter="\t" if self._kind == ".tsv" else ",")
-        header = next(rows, [])
+        header = next(rows, None)
+        if header is None:  # an empty file holds no record, whatever its kind
+            return
         place, name_place = self._columns(header)
         while True:
             start = counted.number + 1
@@ -159,8 +161,10 @@ class _Counted:
 
 
 def _lines(stream: TextIO) -> Iterator[BatchRecord]:
-    """One structure a line, with a name after a tab or, behind a SMILES, a blank."""
+    """One structure a line, with a name after a tab or, behind a SMILES, a blank; a comment is no record."""
     for number, line in enumerate(stream, 1):
+        if is_remark(line):
+            continue
         text, _, name = line.rstrip("\r\n").partition("\t")
         text, name = text.strip(), name.strip()
         if not name and not is_shorthand(text):

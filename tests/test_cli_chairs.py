@@ -181,6 +181,20 @@ def test_standard_input_takes_a_smiles_and_a_name_per_line(monkeypatch: pytest.M
     assert [(d["input"], d["name"]) for d in documents] == [("CC1CCCCC1", "mine"), ("1b-Me 2a-Me", "two")]
 
 
+@pytest.mark.parametrize("piped", [True, False], ids=["standard input", "file"])
+def test_a_comment_line_is_no_structure(
+    piped: bool, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: Capture
+) -> None:
+    text = "# from the notebook\nCC1CCCCC1\tone\n #OC1CCCCC1\n"
+    path = tmp_path / "in.smi"
+    path.write_text(text, encoding="utf-8", newline="")
+    monkeypatch.setattr("sys.stdin", io.StringIO(text))
+    assert run(["chairs", "--json", "-" if piped else str(path)]) == 0
+    captured = capsys.readouterr()
+    assert [document["smiles"] for document in _documents(captured.out)] == ["CC1CCCCC1"]
+    assert captured.err == ""
+
+
 def test_standard_input_takes_an_sdf(monkeypatch: pytest.MonkeyPatch, capsys: Capture) -> None:
     from rdkit import Chem
 

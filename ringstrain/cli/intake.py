@@ -112,10 +112,13 @@ def _is_file_name(argument: str) -> bool:
 def _from_file(path: str) -> Iterator[Record]:
     """Records of a file; a file that cannot be read is one faulty record."""
     from ringstrain.structure.files import read_records
+    from ringstrain.structure.shorthand import is_remark
 
     empty = True
     try:
         for text, name, is_block in read_records(path):
+            if not is_block and is_remark(text):
+                continue
             empty = False
             if is_block:
                 yield Record(text=text, name=name, is_block=True)
@@ -138,7 +141,9 @@ def _standard_input() -> Iterator[str]:
 
 
 def _from_lines(lines: Iterable[str]) -> Iterator[Record]:
-    """One SMILES or shorthand a line, a name after a tab; molfile blocks are known by their fourth line."""
+    """One SMILES or shorthand a line, a name after a tab, no comments; molfile blocks show on their fourth line."""
+    from ringstrain.structure.shorthand import is_remark
+
     stream = iter(lines)
     head = list(islice(stream, 4))
     if len(head) == 4 and ("V2000" in head[3] or "V3000" in head[3]):
@@ -147,7 +152,7 @@ def _from_lines(lines: Iterable[str]) -> Iterator[Record]:
     empty = True
     for line in chain(head, stream):
         text, _, name = line.rstrip("\r\n").lstrip("\N{ZERO WIDTH NO-BREAK SPACE}").partition("\t")
-        if text.strip():
+        if text.strip() and not is_remark(text):
             empty = False
             yield Record(text=text.strip(), name=name.strip())
     if empty:

@@ -49,6 +49,11 @@ def is_shorthand(text: str) -> bool:
     return text[:1].isdigit()
 
 
+def is_remark(text: str) -> bool:
+    """True for a line of a list that is a comment; neither a SMILES nor a shorthand starts with a hash."""
+    return text.lstrip().startswith("#")
+
+
 def read_shorthand(text: str, *, ring: str = "cyclohexane") -> Structure:
     """Structure from a ring shorthand.
 
