@@ -6,21 +6,22 @@ import csv
 import gzip
 import json
 import math
-from collections.abc import Callable, Sequence
+from collections import deque
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import IO, Any, Protocol
 
 from ringstrain.batch_read import suffix_of
-from ringstrain.batch_rows import BatchRecord, Row
+from ringstrain.batch_rows import BatchRecord, Row, Settings, answer
 from ringstrain.errors import InputError, UsageError
 from ringstrain.results import SCHEMA
 
 SUFFIXES = (".csv", ".tsv", ".jsonl", ".sdf", ".parquet")
 _END_OF_BLOCK = b"$$$$\n"
 _PARQUET_ROWS = 10_000
-#: No row is longer than this [bytes]: an input has 100 kB at most.
-_LONGEST_ROW = 4_000_000
+#: Rows at the end of an earlier run that are answered again before we go on after them.
+CHECKED = 20
 _WHOLE = ("input_line", "isomers", "input_rank")
 _SINGLE_FLOATS = ("input_dG_kcal", "best_share")
 
@@ -37,10 +38,24 @@ class Writer(Protocol):
 
 @dataclass(frozen=True, slots=True)
 class Kept:
-    """What is left of an earlier run: whole rows, and where they end [bytes]."""
+    """What is left of an earlier run.
+
+    Attributes
+    ----------
+    rows
+        Whole rows [-].
+    end
+        Where they end [bytes].
+    last
+        The last of them as they stand in the file, at most :data:`CHECKED`.
+    statuses
+        Every status among them.
+    """
 
     rows: int = 0
     end: int = 0
+    last: tuple[bytes, ...] = ()
+    statuses: frozenset[str] = frozenset()
 
 
 def open_writer(path: str | Path, columns: Sequence[str], kept: Kept | None = None) -> Writer:
@@ -138,48 +153,77 @@ def find_rows(path: str | Path, columns: Sequence[str]) -> Kept:
                     f"{str(path)!r} does not begin with the header of this run.",
                     "Resume with the options of the first run, or write another file.",
                 )
-            end = position = len(head)
+            end = len(head)
+            last: deque[bytes] = deque(maxlen=CHECKED)
+            statuses = set()
+            part: list[bytes] = []
             for line in stream:
-                position += len(line)
+                part.append(line)
                 if line == _END_OF_BLOCK if kind == ".sdf" else line.endswith(b"\n"):
+                    last.append(b"".join(part))
+                    part = []
                     rows += 1
-                    end = position
+                    end += len(last[-1])
+                    statuses.add(_facts(last[-1], kind)[2])
     except OSError as error:
         raise InputError(f"The file {str(path)!r} cannot be read: {error.strerror}.", "Check the path.") from None
-    return Kept(rows, end)
+    return Kept(rows, end, tuple(last), frozenset(statuses))
 
 
-def check_last_row(path: str | Path, kept: Kept, record: BatchRecord, columns: Sequence[str]) -> None:
-    """Make sure that the last whole row of a file belongs to a record of this input.
+def check_kept_rows(path: str | Path, kept: Kept, records: Iterable[BatchRecord], settings: Settings) -> None:
+    """Make sure that the last whole rows of a file are the ones this run would write.
+
+    Parameters
+    ----------
+    path
+        The output.
+    kept
+        What an earlier run left in it.
+    records
+        The records of the last rows kept, in order.
+    settings
+        What is asked now.
 
     Raises
     ------
     InputError
-        If it does not.
+        If the rows belong to other records, or were made with other options.
+
+    Notes
+    -----
+    No column tells under which options a row was made, so that the rows are answered again and compared byte by
+    byte.  Several are, since a single one may be the same in every medium.  A row of status ``error`` is believed:
+    its record may have cost a worker its life.
     """
     kind = _kind(path)
-    with open(path, "rb") as stream:
-        start = max(0, kept.end - _LONGEST_ROW)
-        stream.seek(start)
-        tail = stream.read(kept.end - start).decode("utf-8", "backslashreplace").rstrip("\n")
+    for row, record in zip(kept.last, records, strict=True):
+        line, shown, status = _facts(row, kind)
+        if line != str(record.line) or _flat(shown) != _flat(record.shown):
+            raise InputError(
+                f"The rows of {str(path)!r} do not belong to this run (row of line {line}).",
+                "Resume with the input and the options of the first run.",
+            )
+        if status != "error" and _row_bytes(answer(record, settings), kind) != row:
+            raise InputError(
+                f"The rows of {str(path)!r} were made with other options, tables or another version "
+                f"(row of line {line}).",
+                "Resume with those of the first run, or write another file.",
+            )
+
+
+def _facts(row: bytes, kind: str) -> tuple[str, str, str]:
+    """Line, input and status of a row as written; a question mark for a row that is not ours."""
+    text = row.decode("utf-8", "backslashreplace").rstrip("\n")
     try:
         if kind == ".jsonl":
-            found = json.loads(tail.rpartition("\n")[2])
-            line, shown = str(found["input_line"]), found["input"]
-            same = tuple(found)[2:] == tuple(columns)
-        elif kind == ".sdf":
-            block = tail.removesuffix("$$$$").rpartition("$$$$\n")[2]
-            line, shown, same = _data_item(block, "input_line"), _data_item(block, "input"), True
-        else:
-            cells = next(csv.reader([tail.rpartition("\n")[2]], delimiter="\t" if kind == ".tsv" else ","))
-            line, shown, same = cells[0], cells[2], True
-    except (ValueError, KeyError, TypeError, IndexError, StopIteration):
-        line, shown, same = "?", "", False
-    if not same or line != str(record.line) or _flat(shown) != _flat(record.shown):
-        raise InputError(
-            f"The rows of {str(path)!r} do not belong to this run (row of line {line}).",
-            "Resume with the input and the options of the first run.",
-        )
+            found = json.loads(text)
+            return str(found["input_line"]), str(found["input"]), str(found["status"])
+        if kind == ".sdf":
+            return _data_item(text, "input_line"), _data_item(text, "input"), _data_item(text, "status")
+        cells = next(csv.reader([text], delimiter="\t" if kind == ".tsv" else ","))
+        return cells[0], cells[2], cells[4]
+    except (ValueError, KeyError, TypeError, IndexError, StopIteration, csv.Error):
+        return "?", "", ""
 
 
 def _data_item(block: str, name: str) -> str:
@@ -252,6 +296,17 @@ def sdf_record(row: Row) -> str:
     return f"{block if block.endswith(chr(10)) else block + chr(10)}{items}$$$$\n"
 
 
+def _row_bytes(row: Row, kind: str) -> bytes:
+    """A row as it stands in a file."""
+    if kind == ".jsonl":
+        text = json_line(row)
+    elif kind == ".sdf":
+        text = sdf_record(row)
+    else:
+        text = _separated([cell(value) for value in row.cells.values()], "\t" if kind == ".tsv" else ",")
+    return text.encode("utf-8", "backslashreplace")
+
+
 class _TextWriter:
     """Rows as text, each handed to the system whole."""
 
@@ -261,13 +316,7 @@ class _TextWriter:
 
     def write(self, row: Row) -> None:
         """One row."""
-        if self._kind == ".jsonl":
-            text = json_line(row)
-        elif self._kind == ".sdf":
-            text = sdf_record(row)
-        else:
-            text = _separated([cell(value) for value in row.cells.values()], "\t" if self._kind == ".tsv" else ",")
-        self._stream.write(text.encode("utf-8", "backslashreplace"))
+        self._stream.write(_row_bytes(row, self._kind))
 
     def close(self) -> None:
         """The end of the file."""

@@ -17,7 +17,8 @@ import pytest
 import ringstrain as rs
 from ringstrain.batch import Failure, analyze_many
 from ringstrain.batch_read import RecordReader
-from ringstrain.batch_rows import COLUMNS, ISOMER_COLUMNS, NMR_COLUMNS, BatchRecord, Row, Settings, answer
+from ringstrain.batch_rows import COLUMNS, ISOMER_COLUMNS, NMR_COLUMNS, BatchRecord, Row, Settings, answer, lost_row
+from ringstrain.batch_write import cell
 from ringstrain.cli.border import run
 from ringstrain.crew import Crew, in_chunks, open_pool, run_in_order
 from ringstrain.errors import InputError, OutOfScope, TableError
@@ -145,6 +146,33 @@ def test_tables_are_read_by_the_name_of_their_columns(tmp_path: Path) -> None:
         assert next(iter(reader)).text == "a, b"
 
 
+def test_a_comment_is_no_record_but_counts_as_a_line(tmp_path: Path) -> None:
+    path = tmp_path / "in.smi"
+    path.write_text("# library of May\nCC1CCCCC1\n\n  #OC1CCCCC1\nOC1CCCCC1 b\n", encoding="utf-8", newline="")
+    with RecordReader(path) as reader:
+        assert [(r.line, r.id, r.text) for r in reader] == [(2, "", "CC1CCCCC1"), (3, "", ""), (5, "b", "OC1CCCCC1")]
+
+
+@pytest.mark.parametrize("name", ["in.smi", "in.csv", "in.tsv", "in.sdf", "comments.smi"])
+def test_a_file_without_records_is_named(name: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (tmp_path / name).write_text("# nothing yet\n" if name == "comments.smi" else "", encoding="utf-8", newline="")
+    assert batch(tmp_path / name, "-o", tmp_path / "out.csv", "-q") == 0
+    assert rows_of(tmp_path / "out.csv") == []
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert "holds no record" in captured.err
+    assert name in captured.err
+
+
+@pytest.mark.parametrize("options", [("--smiles-column", "nix"), ("--id-column", "nix")])
+def test_a_file_that_gives_no_record_costs_no_earlier_answer(options: tuple[str, str], tmp_path: Path) -> None:
+    (tmp_path / "in.csv").write_text("smiles\nCC1CCCCC1\n", encoding="utf-8", newline="")
+    assert batch(tmp_path / "in.csv", "-o", tmp_path / "out.csv", "-q") == 0
+    before = (tmp_path / "out.csv").read_bytes()
+    assert batch(tmp_path / "in.csv", "-o", tmp_path / "out.csv", "-q", *options) == 3
+    assert (tmp_path / "out.csv").read_bytes() == before
+
+
 def test_a_table_without_structures_is_refused(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     path = tmp_path / "in.csv"
     path.write_text("a,b\n1,2\n", encoding="utf-8", newline="")
@@ -257,6 +285,55 @@ def test_rows_with_other_columns_are_left_alone(mixed: Path, tmp_path: Path) -> 
         before = out.read_bytes()
         assert batch(mixed, "-o", out, "-q", "--resume", "--isomers") == 3
         assert out.read_bytes() == before
+
+
+@pytest.mark.parametrize("suffix", [".csv", ".tsv", ".jsonl", ".sdf"])
+@pytest.mark.parametrize(
+    "options",
+    [("--medium", "polar"), ("-T", "250"), ("--ring", "oxane"), ("--table-file", "own.csv"), ("--nmr",), ("--strict",)],
+)
+def test_rows_made_with_other_options_are_left_alone(
+    suffix: str,
+    options: tuple[str, ...],
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    Path("own.csv").write_text("table,group,value\navalues,OMe,9.0\n", encoding="utf-8", newline="")
+    # what tells them apart is no longer the last row kept: no price of cyclohexane itself depends on anything
+    lines = ["1b-NO2 3b-CN", "1b-OMe 2a-Br", "C1CCCCC1", "c1ccccc1", "", "CC1CCCCC1"]
+    Path("in.smi").write_text("\n".join(lines) + "\n", encoding="utf-8", newline="")
+    out = Path(f"out{suffix}")
+    batch("in.smi", "-o", out, "-q")
+    end = b"$$$$\n" if suffix == ".sdf" else b"\n"
+    torn = end.join(out.read_bytes().split(end)[:-2]) + end + b"to"
+    out.write_bytes(torn)
+    assert batch("in.smi", "-o", out, "-q", "--resume", *options) == 3
+    assert out.read_bytes() == torn
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert "other options" in captured.err or "header of this run" in captured.err
+    assert "write another file" in captured.err
+
+
+def test_a_row_whose_worker_died_is_not_tried_again(mixed: Path, tmp_path: Path) -> None:
+    out = tmp_path / "out.csv"
+    batch(mixed, "-o", out, "-q")
+    lost = lost_row(BatchRecord(line=7, id="", text="1b-tBu 4a-Me"), Settings())
+    cells = ",".join(cell(value) for value in lost.cells.values())
+    kept = out.read_text(encoding="utf-8").splitlines(keepends=True)[:7]
+    out.write_text("".join(kept) + cells + "\n", encoding="utf-8", newline="")
+    assert batch(mixed, "-o", out, "-q", "--resume") == 0
+    assert [row["status"] for row in rows_of(out)] == [*STATUSES[:6], "error", "ok"]
+
+
+def test_strict_counts_the_rows_of_the_earlier_run(mixed: Path, tmp_path: Path) -> None:
+    out = tmp_path / "out.csv"
+    assert batch(mixed, "-o", out, "-q", "--strict") == 4
+    out.write_bytes(out.read_bytes()[:-20])
+    assert batch(mixed, "-o", out, "-q", "--strict", "--resume") == 4
+    assert batch(mixed, "-o", out, "-q", "--resume") == 0
 
 
 # ---- streams and workers -------------------------------------------------------------------------------------------

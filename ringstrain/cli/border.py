@@ -158,6 +158,11 @@ def refuse(error: RingstrainError, command: str, label: str, output: Output) -> 
     return exit_code_of(error)
 
 
+def remark(text: str) -> None:
+    """Say on standard error, in one line, what the answer does not show and is no error."""
+    _say([text])
+
+
 def _say(lines: Sequence[str]) -> None:
     """Lines on standard error, without wrapping, so that carets stay under their atoms."""
     console = make_console(sys.stderr)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import sys
 import time
+from collections import deque
 from collections.abc import Callable, Iterator
 from concurrent.futures import Executor
 from contextlib import closing, contextmanager
@@ -16,6 +17,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from ringstrain.cli import common
+from ringstrain.cli.border import remark
 from ringstrain.errors import InputError, RingstrainError, UsageError
 
 if TYPE_CHECKING:
@@ -106,15 +108,15 @@ def batch(
     if Path(file).exists() and Path(output).exists() and os.path.samefile(file, output):
         raise UsageError("Input and output are the same file.", "Write to another one.")
     from ringstrain.batch_read import RecordReader
-    from ringstrain.batch_rows import answer_chunk, lost_row
+    from ringstrain.batch_rows import EXIT_CODES, answer_chunk, lost_row
     from ringstrain.batch_write import Kept, find_rows, open_writer
     from ringstrain.crew import run_in_order
 
     with RecordReader(file, smiles_column=smiles_column, id_column=id_column) as reader:
-        few, records = _peek(iter(reader))
+        seen, records = _peek(iter(reader))
         kept = find_rows(output, settings.columns) if resume else Kept()
         records = _skip(records, kept, output, settings)
-        number = workers or (1 if few else os.cpu_count() or 1)
+        number = workers or (1 if seen < FEW else os.cpu_count() or 1)
         with (
             _engage(number, scheduler) as (crew, chunk, window),
             closing(open_writer(output, settings.columns, kept)) as writer,
@@ -127,17 +129,28 @@ def batch(
                 chunk=chunk,
                 window=window,
             )
-            return _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet, strict=strict)
+            statuses = _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet) | kept.statuses
+        if not seen:
+            remark(f"The file {file!r} holds no record, and {output!r} no row. Check that it is the right file.")
+    return max((EXIT_CODES.get(status, 0) for status in statuses), default=0) if strict else 0
 
 
-def _peek(records: Iterator[BatchRecord]) -> tuple[bool, Iterator[BatchRecord]]:
-    """Whether there are few records, and all of them; a source that breaks off does so in its place."""
+def _peek(records: Iterator[BatchRecord]) -> tuple[int, Iterator[BatchRecord]]:
+    """How many records there are, up to :data:`FEW`, and all of them; a source that breaks off does so in its place.
+
+    Raises
+    ------
+    RingstrainError
+        If it breaks off before the first record: then nothing is to be written over what the output holds.
+    """
     first: list[BatchRecord] = []
     try:
         first.extend(islice(records, FEW))
     except RingstrainError as error:
-        return True, chain(first, _raising(error))
-    return len(first) < FEW, chain(first, records)
+        if not first:
+            raise
+        return len(first), chain(first, _raising(error))
+    return len(first), chain(first, records)
 
 
 def _raising(error: RingstrainError) -> Iterator[BatchRecord]:
@@ -181,17 +194,21 @@ def _settings(
 
 
 def _skip(records: Iterator[BatchRecord], kept: Kept, output: str, settings: Settings) -> Iterator[BatchRecord]:
-    """The records that have no row yet; the last one that has is checked against it."""
+    """The records that have no row yet; the last ones that have are checked against theirs."""
     if not kept.rows:
         return records
-    from ringstrain.batch_write import check_last_row
+    from ringstrain.batch_write import check_kept_rows
 
-    done = next(islice(records, kept.rows - 1, None), None)
-    if done is None:
+    done = 0
+    last: deque[BatchRecord] = deque(maxlen=len(kept.last))
+    for record in islice(records, kept.rows):
+        last.append(record)
+        done += 1
+    if done < kept.rows:
         raise InputError(
             f"{output!r} holds more rows than the input has records.", "Resume with the input of the first run."
         )
-    check_last_row(output, kept, done, settings.columns)
+    check_kept_rows(output, kept, last, settings)
     return records
 
 
@@ -228,10 +245,10 @@ def _open_cluster(address: str) -> Any:
 
 
 def _write_all(
-    rows: Iterator[Row], write: Callable[[Row], None], reader: RecordReader, *, done: int, quiet: bool, strict: bool
-) -> int:
-    """Write the rows, tell how far it is, sum up; the exit code."""
-    from ringstrain.batch_rows import EXIT_CODES, STATUSES
+    rows: Iterator[Row], write: Callable[[Row], None], reader: RecordReader, *, done: int, quiet: bool
+) -> frozenset[str]:
+    """Write the rows, tell how far it is, sum up; every status there was."""
+    from ringstrain.batch_rows import STATUSES
 
     tally = dict.fromkeys(STATUSES, 0)
     progress = _Progress(reader, done=done, shown=not quiet and sys.stderr.isatty())
@@ -244,7 +261,7 @@ def _write_all(
         progress.clear()
         if not quiet:
             sys.stderr.write(_summary(tally, done, progress.seconds) + "\n")
-    return max((EXIT_CODES[status] for status, count in tally.items() if count), default=0) if strict else 0
+    return frozenset(status for status, count in tally.items() if count)
 
 
 def _summary(tally: dict[str, int], done: int, seconds: float) -> str:
