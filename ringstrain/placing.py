@@ -188,11 +188,22 @@ def _parent_smiles(elements: Sequence[str]) -> str:
 
 
 def _marks(structure: Structure) -> dict[int, int]:
-    """Atom maps of a SMILES by atom."""
-    found = {}
+    """Atom maps of a SMILES by atom.
+
+    Raises
+    ------
+    UsageError
+        If two atoms carry the same number: a pattern would not tell them apart.
+    """
+    found: dict[int, int] = {}
     for atom, (start, end) in enumerate(structure.spans):
         mark = _MARK.search(structure.text[start:end])
         if mark:
+            if int(mark.group(1)) in found.values():
+                raise UsageError(
+                    f"Two atoms of the scaffold are marked with {mark.group(1)}.",
+                    "Give each its own number: [CH2:1]1[CH2:2]CCCC1=O.",
+                )
             found[atom] = int(mark.group(1))
     return found
 

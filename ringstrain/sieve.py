@@ -154,6 +154,8 @@ class Sieve:
             raise UsageError(
                 f"A share of {comparison.value:g} cannot be.", "Write shares from 0 to 1, or in %: OH>=90%."
             )
+        if not comparison.name:
+            raise UsageError(f"{text!r} names no group.", "Write a group, a sign and a number: OH>=0.9.")
         return self._number(comparison.name), comparison
 
     # ---- passing ---------------------------------------------------------------------------------------------
@@ -190,7 +192,8 @@ class Sieve:
     def _pair(self, text: str, *, same: bool) -> tuple[list[tuple[int, int]], int, int]:
         """Pairs of slots that count as cis or trans, and the group numbers wanted on them (0 for any)."""
         parts = [part.strip() for part in text.split(",", 1)]
-        if len(parts) != 2 or not all(parts):
+        mixed = parts[0].isdecimal() is not parts[-1].isdecimal()  # no group is called by a number alone
+        if len(parts) != 2 or not all(parts) or mixed:
             raise UsageError(f"{text!r} is no pair.", "Give two positions (1,2) or two groups (Me,OH).")
         slots = self._scaffold.slots
         if all(part.isdecimal() for part in parts):

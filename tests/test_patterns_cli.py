@@ -71,14 +71,26 @@ def test_a_range_of_counts_is_taken(capsys: pytest.CaptureFixture[str]) -> None:
         (("Me", "--ring", "[CH3:1]C1CCCCC1"), 2),
         (("Me", "--medium", "all"), 2),
         (("Me", "--smiles", "--json"), 2),
+        (("Me", "--smiles"), 2),  # a format is given besides
         (("Me", "--rank", "beauty"), 2),
         (("Me", "--ring", "[cH:1]1ccccc1"), 4),
+        (("Me", "--ring", "[CH2:1]1[CH2:1]CCCC1"), 2),
+        (("Me",) * 13, 2),
+        (("Me", "--choose-from", "OH", "--count", "12:13"), 2),
+        (("Me", "--choose-from", ","), 2),
+        (("Me", "--count", "2"), 2),
+        (("Me", "--axial", ">=0.5"), 2),
+        (("Me", "OH", "--cis", "1,2,3"), 2),
+        (("Me", "OH", "--cis", "1,Me"), 2),
+        (("Me", "OH", "--trans", "1,7"), 2),
+        (("Me", "--locked", "nan"), 2),
     ],
 )
+@pytest.mark.parametrize("format", ["plain", "json", "table"])
 def test_refusals_have_the_exit_code_of_their_family(
-    arguments: tuple[str, ...], code: int, capsys: pytest.CaptureFixture[str]
+    arguments: tuple[str, ...], code: int, format: str, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    assert patterns(*arguments) == code
+    assert patterns(*arguments, "--format", format) == code
     captured = capsys.readouterr()
     assert captured.out == ""
     assert captured.err.strip()

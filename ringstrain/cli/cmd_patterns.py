@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from itertools import chain
+from itertools import chain, islice
 from typing import TYPE_CHECKING, Annotated
 
 import typer
@@ -53,9 +53,14 @@ def patterns(
         ),
     ] = None,
     count: Annotated[
-        str,
-        typer.Option("--count", metavar="N|M:N", help="How many to choose, e.g. 2 or 1:3; only with --choose-from."),
-    ] = "1",
+        str | None,
+        typer.Option(
+            "--count",
+            metavar="N|M:N",
+            help="How many to choose, e.g. 2 or 1:3, else one; only with --choose-from.",
+            show_default=False,
+        ),
+    ] = None,
     ring: Annotated[
         str,
         typer.Option(
@@ -117,7 +122,7 @@ def patterns(
     debug: common.DebugOption = False,
 ) -> int:
     """Run the command; the exit code."""
-    if not groups and not choose_from:
+    if not groups and choose_from is None:
         typer.echo(context.get_help(), err=True)
         return 2
     output = common.make_output(format, json, units=units, ascii=ascii, no_color=no_color)
@@ -127,6 +132,11 @@ def patterns(
     media = common.media_of(medium)
     if len(temperatures) > 1 or len(media) > 1:
         raise UsageError("Patterns are ranked at one temperature in one medium.", "Give one value to -T and --medium.")
+    choices = _choices(choose_from)
+    if count is not None and not choices:
+        raise UsageError(
+            "--count says how many to choose, and there is no --choose-from.", "Add it: --choose-from Me,OH."
+        )
     from ringstrain.patterns import plan_search
     from ringstrain.sieve import Wish
 
@@ -134,8 +144,8 @@ def patterns(
     search = plan_search(
         groups or (),
         ring=ring,
-        choose_from=[name for name in (choose_from or "").split(",") if name.strip()],
-        count=parse_count(count),
+        choose_from=choices,
+        count=parse_count(count or "1"),
         geminal=not no_geminal,
         enantiomers=enantiomers,
         wish=Wish(
@@ -154,6 +164,14 @@ def patterns(
     )
     _write(output, search, smiles=smiles, enantiomers=enantiomers)
     return 0
+
+
+def _choices(text: str | None) -> list[str]:
+    """Names of ``Me,OH``; none for None."""
+    names = [name for name in (text or "").split(",") if name.strip()]
+    if text is not None and not names:
+        raise UsageError(f"{text!r} names no group.", "Give some to choose from: --choose-from Me,OH.")
+    return names
 
 
 def parse_count(text: str) -> tuple[int, int]:
@@ -199,7 +217,11 @@ def _write(output: common.Output, search: Search, *, smiles: bool, enantiomers: 
 
 
 def _write_lines(output: common.Output, found: Iterator[Pattern], head: tuple[str, ...], write: object) -> None:
-    """A header and one line for each pattern, as they come."""
+    """A header and one line for each pattern, as they come.
+
+    The first pattern is asked for before the header is written, since a search that cannot be done says so only then.
+    """
     assert callable(write)
-    for line in chain(head, (write(pattern) for pattern in found)):
+    first = list(islice(found, 1))
+    for line in chain(head, (write(pattern) for pattern in chain(first, found))):
         output.line(line)
