@@ -150,3 +150,21 @@ def test_a_broken_shorthand_is_marked_where_it_is_broken(text: str, error: type[
     assert caught.value.span is not None
     assert text[slice(*caught.value.span)] == marked_part
     assert caught.value.next_step
+
+
+@pytest.mark.parametrize(("ring", "text"), [("piperidine", "1{}-Me 3b-OH"), ("piperazine", "4{}-Me 2a-OH")])
+def test_a_group_on_a_nitrogen_needs_no_face_and_may_have_one(ring: str, text: str) -> None:
+    structures = [rs.read(text.format(face), ring=ring) for face in ("", "a", "b")]
+    assert len({structure.smiles for structure in structures}) == 1
+    assert {energies(structure)[0] for structure in structures} == {energies(structures[0])[0]}
+
+
+@pytest.mark.parametrize("text", ["1-Me 1-Et", "1-Me 1b-Et", "3-Me", "1-", "1Me"])
+def test_a_nitrogen_takes_one_group_and_a_carbon_needs_a_face(text: str) -> None:
+    with pytest.raises(ParseError):
+        rs.read(text, ring="piperidine")
+
+
+def test_patterns_on_a_nitrogen_can_be_read_again() -> None:
+    for pattern in rs.enumerate_patterns(["Me", "Et"], ring="piperidine", enantiomers=True):
+        assert rs.read(pattern.pattern, ring="piperidine").smiles == rs.read(pattern.smiles).smiles

@@ -1,8 +1,8 @@
 """The ring shorthand: ``"1b-tBu 4a-Me"`` is cis or trans at sight and needs no SMILES.
 
-Each entry is a position, a face (a or alpha = down, b or beta = up) and a group by table key or alias.  The
-ring is seen from above with its numbers running clockwise.  Ring atoms come first, so that atom numbers are
-positions.
+Each entry is a position, a face (a or alpha = down, b or beta = up) and a group by table key or alias.  A ring
+nitrogen inverts, so that its group needs no face (``1-Me`` in piperidine).  The ring is seen from above with its
+numbers running clockwise.  Ring atoms come first, so that atom numbers are positions.
 """
 
 from __future__ import annotations
@@ -38,6 +38,8 @@ _SITES = {"C": 2, "Si": 2, "N": 1, "O": 0, "S": 0}
 
 @dataclass(frozen=True, slots=True)
 class _Entry:
+    """One group; ``up`` says nothing on an inverting nitrogen."""
+
     position: int
     up: bool
     smiles: str
@@ -89,7 +91,7 @@ def read_shorthand(text: str, *, ring: str = "cyclohexane") -> Structure:
         if (entry.position, entry.up) in faces or (single and (entry.position, not entry.up) in faces):
             raise ParseError(
                 f"Position {entry.position} carries two groups on one site.",
-                "Put the second on the other face (a or b) or another position.",
+                f"Put the second on {'' if single else 'the other face (a or b) or '}another position.",
                 span=entry.span,
                 text=text,
             )
@@ -101,14 +103,16 @@ def _entry(found: re.Match[str], text: str, elements: tuple[str, ...]) -> _Entry
     """One entry, checked."""
     span = found.span()
     parsed = _ENTRY.fullmatch(found.group())
-    if not parsed or not parsed["face"] or not parsed["dash"] or not parsed["group"]:
+    position = int(parsed["position"]) if parsed else 0
+    inverts = 1 <= position <= 6 and _SITES[elements[position - 1]] == 1
+    if not parsed or not (parsed["face"] or inverts) or not parsed["dash"] or not parsed["group"]:
         raise ParseError(
             f"{found.group()!r} is no entry of a ring shorthand.",
-            "Write position, face a or b, a dash and a group: 1b-tBu 4a-Me.",
+            f"Write position, face a or b{' (a nitrogen needs none)' if 'N' in elements else ''}, a dash and a group: "
+            "1b-tBu 4a-Me.",
             span=span,
             text=text,
         )
-    position = int(parsed["position"])
     if not 1 <= position <= 6:
         raise ParseError(f"Position {position} is not on a six-membered ring.", "Use 1 to 6.", span=span, text=text)
     if _SITES[elements[position - 1]] == 0:
