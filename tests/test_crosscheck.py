@@ -321,11 +321,27 @@ def test_a_bar_is_drawn_on_a_terminal_only(monkeypatch: pytest.MonkeyPatch) -> N
     screen = Terminal()
     monkeypatch.setattr(sys, "stderr", screen)
     monkeypatch.setattr(cmd_crosscheck, "PATIENCE_S", -1.0)
-    going = cmd_crosscheck._watch(60.0, show=True)
+    going = cmd_crosscheck._Watch(60.0, show=True)
     while "of 8" not in screen.getvalue():
         assert going(4, 8)
     assert "[###############..............." in screen.getvalue()
-    assert cmd_crosscheck._watch(math.inf, show=False)(4, 8)
+    going.clear()
+    assert screen.getvalue().endswith("\r\033[K")
+    assert cmd_crosscheck._Watch(math.inf, show=False)(4, 8)
+
+
+@pytest.mark.parametrize("structure", ["CC1CCCCC1", "c1ccccc1"])
+def test_quiet_writes_no_control_codes(
+    structure: str, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    from ringstrain.cli import cmd_crosscheck
+
+    monkeypatch.setattr(cmd_crosscheck, "PATIENCE_S", -1.0)
+    monkeypatch.setattr(sys.stderr, "isatty", lambda: True, raising=False)
+    run(["crosscheck", structure, "--quiet", "--format", "plain", "--conformers", "4"])
+    captured = capsys.readouterr()
+    assert "\033" not in captured.out
+    assert "\r" not in captured.err
 
 
 def test_the_comparison_that_ships_covers_the_rows_that_test_the_prices() -> None:

@@ -15,7 +15,6 @@ from ringstrain.errors import RingstrainError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.crosscheck.records import CrossCheck, MethodName
-    from ringstrain.crosscheck.search import Going
 
 HELP = """A second opinion: conformers of every state by a force field, beside the ledger.
 
@@ -78,6 +77,7 @@ def crosscheck(
     tables = common.tables_for(table_file)
     from ringstrain.crosscheck.run import crosscheck as check
 
+    watch = _Watch(seconds, show=not quiet and sys.stderr.isatty())
     try:
         answer = check(
             record.read(ring),
@@ -87,10 +87,13 @@ def crosscheck(
             tables=tables,
             conformers=conformers or None,
             seed=seed,
-            keep_going=_watch(seconds, show=not quiet and sys.stderr.isatty()),
+            keep_going=watch,
         )
     except RingstrainError as error:
+        watch.clear()  # the complaint gets a line of its own
         return refuse(error, "crosscheck", record.label, output)
+    finally:
+        watch.clear()
     _write(answer, output)
     return 0
 
@@ -113,29 +116,43 @@ def _method(name: str) -> MethodName:
     return "xtb"
 
 
-def _watch(seconds: float, *, show: bool) -> Going:
-    """Stops the search when time is up; draws a bar on standard error once it has taken a second."""
-    start = time.monotonic()
-    shown = [start]
+class _Watch:
+    """Stops the search when time is up; draws a bar on standard error once it has taken a second.
 
-    def going(done: int, total: int) -> bool:
+    Parameters
+    ----------
+    seconds
+        Longest time [s].
+    show
+        True to draw the bar.
+    """
+
+    def __init__(self, seconds: float, *, show: bool) -> None:
+        self._seconds, self._show = seconds, show
+        self._start = self._drawn = time.monotonic()
+        self._is_drawn = False
+
+    def __call__(self, done: int, total: int) -> bool:
+        """True to go on after so many conformers."""
         now = time.monotonic()
-        if show and now - start > PATIENCE_S and now - shown[0] > 0.1:
-            shown[0] = now
+        if self._show and now - self._start > PATIENCE_S and now - self._drawn > 0.1:
+            self._drawn, self._is_drawn = now, True
             filled = _BAR * done // max(total, 1)
             what = f"{done} of {total} conformers" if done < total else "building and refining states"
             sys.stderr.write(f"\r[{'#' * filled}{'.' * (_BAR - filled)}] {what}\033[K")
             sys.stderr.flush()
-        return now - start < seconds
+        return now - self._start < self._seconds
 
-    return going
+    def clear(self) -> None:
+        """Wipe the bar; nothing is written where none was drawn."""
+        if self._is_drawn:
+            sys.stderr.write("\r\033[K")
+            sys.stderr.flush()
+            self._is_drawn = False
 
 
 def _write(answer: CrossCheck, output: common.Output) -> None:
-    """The answer in the chosen format, the bar wiped first."""
-    if sys.stderr.isatty():
-        sys.stderr.write("\r\033[K")
-        sys.stderr.flush()
+    """The answer in the chosen format."""
     if output.format == "json":
         from ringstrain.views.as_json import to_line
 
