@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import json
+from pathlib import Path
 
 import pytest
 from ringstrain.cli.border import run
@@ -122,3 +123,47 @@ def test_carets_stand_under_every_open_centre(capfd: pytest.CaptureFixture[str])
     assert carets == ["C1", "C7"]
     assert "2, 7" in marks
     assert "isomers" in step
+
+
+@pytest.mark.parametrize(
+    "command",
+    ["chairs", "isomers", "nmr", "reactivity", "draw", "crosscheck", "assign --observed H1=10"],
+)
+@pytest.mark.parametrize(("ring", "words"), [("oxane", "of a shorthand"), ("hexane", "No ring is called")])
+def test_a_parent_ring_nothing_can_use_is_refused(
+    command: str, ring: str, words: str, capfd: pytest.CaptureFixture[str]
+) -> None:
+    assert run([*command.split(), "CC1CCCCC1", "--ring", ring]) == 2
+    out, err = capfd.readouterr()
+    assert out == ""
+    assert words in err
+
+
+def test_a_parent_ring_for_a_molfile_is_refused_too(tmp_path: Path, capfd: pytest.CaptureFixture[str]) -> None:
+    assert run(["batch", str(_written(tmp_path / "a.smi", "CC1CCCCC1\n")), "-o", str(tmp_path / "a.sdf"), "-q"]) == 0
+    assert run(["nmr", str(tmp_path / "a.sdf"), "--ring", "oxane"]) == 2
+    assert "a molfile is none" in capfd.readouterr().err
+
+
+def test_candidates_may_use_the_parent_ring(capfd: pytest.CaptureFixture[str]) -> None:
+    arguments = ["assign", "CC1CCCCO1", "--observed", "H2=10,2", "--candidate", "2b-Me", "--ring", "oxane", "--json"]
+    assert run(arguments) == 0
+    assert capfd.readouterr().err == ""
+
+
+@pytest.mark.parametrize("command", ["chairs", "batch"])
+def test_a_list_with_a_shorthand_may_hold_smiles_besides(
+    command: str, tmp_path: Path, capfd: pytest.CaptureFixture[str]
+) -> None:
+    tail = ["-o", str(tmp_path / "out.csv"), "-q"] if command == "batch" else ["--json"]
+    mixed = _written(tmp_path / "mixed.smi", "CC1CCCCC1\n2b-Me\n")
+    assert run([command, str(mixed), "--ring", "oxane", *tail]) == 0
+    assert capfd.readouterr().err == ""
+    alone = _written(tmp_path / "alone.smi", "CC1CCCCC1\n")
+    assert run([command, str(alone), "--ring", "oxane", *tail]) == 0
+    assert "--ring oxane was not used" in capfd.readouterr().err
+
+
+def _written(path: Path, text: str) -> Path:
+    path.write_text(text, encoding="utf-8", newline="")
+    return path

@@ -74,7 +74,7 @@ def assign(
     output = common.make_output(format, json, units="kcal", ascii=ascii, no_color=no_color)
     if observed is None:
         raise UsageError("--observed is missing.", 'Give the couplings, such as --observed "H1=10.8,4.2; H4=3.1".')
-    record = only_record(structures or [])
+    record = only_record(structures or [], ring, candidate or ())
     temperatures = common.parse_temperatures(temperature)
     media = common.media_of(medium)
     tables = common.tables_for(table_file)

@@ -18,6 +18,7 @@ import typer
 
 from ringstrain.cli import common
 from ringstrain.cli.border import remark
+from ringstrain.cli.intake import PARENT, check_ring
 from ringstrain.errors import InputError, RingstrainError, UsageError
 
 if TYPE_CHECKING:
@@ -113,7 +114,8 @@ def batch(
     from ringstrain.crew import run_in_order
 
     with RecordReader(file, smiles_column=smiles_column, id_column=id_column) as reader:
-        seen, records = _peek(iter(reader))
+        source = _Source(reader)
+        seen, records = _peek(iter(source))
         kept = find_rows(output, settings.columns) if resume else Kept()
         records = _skip(records, kept, output, settings)
         number = workers or (1 if seen < FEW else os.cpu_count() or 1)
@@ -132,7 +134,24 @@ def batch(
             statuses = _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet) | kept.statuses
         if not seen:
             remark(f"The file {file!r} holds no record, and {output!r} no row. Check that it is the right file.")
+        elif ring != PARENT and not source.has_shorthand:
+            remark(f"--ring {ring} was not used: none of the records is a shorthand.")
     return max((EXIT_CODES.get(status, 0) for status in statuses), default=0) if strict else 0
+
+
+class _Source:
+    """Records of a reader; remembers whether a parent ring could be of use to any."""
+
+    def __init__(self, reader: RecordReader) -> None:
+        self._reader = reader
+        self.has_shorthand = False
+
+    def __iter__(self) -> Iterator[BatchRecord]:
+        from ringstrain.structure.shorthand import is_shorthand
+
+        for record in self._reader:
+            self.has_shorthand = self.has_shorthand or (not record.is_block and is_shorthand(record.text))
+            yield record
 
 
 def _peek(records: Iterator[BatchRecord]) -> tuple[int, Iterator[BatchRecord]]:
@@ -172,14 +191,12 @@ def _settings(
 ) -> Settings:
     """What is asked about every record, checked before the first one is read."""
     from ringstrain.batch_rows import Settings
-    from ringstrain.structure.shorthand import PARENT_RINGS
     from ringstrain.tables.conditions import make_conditions
 
     temperatures, media = common.parse_temperatures(temperature), common.media_of(medium)
     if len(temperatures) > 1 or len(media) > 1:
         raise UsageError("A batch has one temperature and one medium.", "Give one value to -T and --medium.")
-    if ring not in PARENT_RINGS:
-        raise UsageError(f"No ring is called {ring!r}.", f"Choose one of {', '.join(PARENT_RINGS)}.")
+    check_ring(ring)
     make_conditions(common.tables_for(table_file), temperature_K=temperatures[0], medium=media[0])
     return Settings(
         temperature_K=temperatures[0],

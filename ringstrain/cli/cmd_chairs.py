@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from ringstrain.cli import common
-from ringstrain.cli.border import refuse
-from ringstrain.cli.intake import Record, nothing_given, records
+from ringstrain.cli.border import refuse, remark
+from ringstrain.cli.intake import PARENT, Record, check_ring, nothing_given, records
 from ringstrain.errors import RingstrainError, UsageError
 
 if TYPE_CHECKING:
@@ -69,13 +69,17 @@ def chairs(
         tables=tables,
     )
     question.check()
+    check_ring(ring, structures or ())
     writer = _Writer(output=output, tables=tables, ledger=ledger, draw=draw)
-    worst = 0
+    worst, is_idle = 0, ring != PARENT
     for record in records(structures or []):
+        is_idle = is_idle and not record.takes_ring
         try:
             writer.write(question.answers(record))
         except RingstrainError as error:
             worst = max(worst, refuse(error, "chairs", record.label, output))
+    if is_idle:
+        remark(f"--ring {ring} was not used: none of the structures is a shorthand.")
     return worst
 
 

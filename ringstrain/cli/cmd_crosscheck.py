@@ -65,7 +65,7 @@ def crosscheck(
         typer.echo(context.get_help(), err=True)
         return 2
     output = common.make_output(format, json, units=units, ascii=ascii, no_color=no_color)
-    record = only_record(structures or [])
+    record = only_record(structures or [], ring)
     temperatures, media = common.parse_temperatures(temperature), common.media_of(medium)
     if len(temperatures) > 1 or len(media) > 1:
         raise UsageError("A cross-check takes one temperature and one medium.", "Give one of each.")

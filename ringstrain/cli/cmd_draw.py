@@ -102,7 +102,7 @@ def draw(
         shown=(numbers, gauche, not no_clashes, hydrogens),
         extras=(nmr, reactivity),
     )
-    record = only_record(structures or [])
+    record = only_record(structures or [], ring)
     try:
         structure = record.read(ring)
         content = job.content(structure, suffix)

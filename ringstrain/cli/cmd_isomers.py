@@ -64,7 +64,7 @@ def isomers(
         typer.echo(context.get_help(), err=True)
         return 2
     output = common.make_output(format, json, units=units, ascii=ascii, no_color=no_color)
-    record = only_record(structures or [])
+    record = only_record(structures or [], ring)
     temperatures = common.parse_temperatures(temperature)
     media = common.media_of(medium)
     wanted = common.atoms_of(at)

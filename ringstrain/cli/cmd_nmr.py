@@ -105,7 +105,7 @@ def nmr(
         typer.echo(context.get_help(), err=True)
         return 2
     output = common.make_output(format, json, units=units, ascii=ascii, no_color=no_color)
-    record = only_record(structures or [])
+    record = only_record(structures or [], ring)
     for name, value in (("--spectrometer", spectrometer), ("--gap", gap), ("--gap-hz", gap_hz)):
         _check_positive(name, value)
     _check_positive("--observed-error", observed_error)

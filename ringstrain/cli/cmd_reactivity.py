@@ -77,7 +77,7 @@ def reactivity(
         check_class(reaction)
     request = make_request(nucleophile=nucleophile, base=base, reagent=reagent, electrophile=electrophile)
     temperatures, media = common.parse_temperatures(temperature), common.media_of(medium)
-    record = only_record(structures or [])
+    record = only_record(structures or [], ring)
     try:
         structure = record.read(ring)
         answers = [

@@ -14,6 +14,9 @@ from ringstrain.errors import InputError, UsageError
 if TYPE_CHECKING:
     from ringstrain.structure.records import Structure
 
+#: Parent ring of a shorthand when none is named.
+PARENT = "cyclohexane"
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Record:
@@ -35,6 +38,14 @@ class Record:
     name: str = ""
     is_block: bool = False
     fault: InputError | None = None
+
+    @property
+    def takes_ring(self) -> bool:
+        """True when a parent ring can be named for it: a shorthand, or nothing that could be read."""
+        from ringstrain.structure.shorthand import is_shorthand
+
+        text = self.text.strip()
+        return self.fault is not None or not (self.is_block or (text and not is_shorthand(text)))
 
     @property
     def label(self) -> str:
@@ -76,18 +87,67 @@ def records(arguments: Sequence[str]) -> Iterator[Record]:
             yield Record(text=argument)
 
 
-def only_record(arguments: Sequence[str]) -> Record:
+def only_record(arguments: Sequence[str], ring: str = PARENT, beside: Sequence[str] = ()) -> Record:
     """The one record a command takes.
+
+    Parameters
+    ----------
+    arguments
+        As for :func:`records`.
+    ring
+        Parent ring asked for.
+    beside
+        Other texts of the command that may be shorthands.
 
     Raises
     ------
     UsageError
-        If there are several.
+        If there are several, or the ring is unknown or nothing can use it.
     """
+    check_ring(ring, [*arguments, *beside] if arguments else ())
     found = list(islice(records(arguments), 2))
     if len(found) != 1:
         raise UsageError("This command takes one structure.", "Give one at a time.")
+    if ring != PARENT and not any(record.takes_ring for record in (*found, *(Record(text=text) for text in beside))):
+        raise _idle_ring(ring, found[0])
     return found[0]
+
+
+def check_ring(ring: str, arguments: Sequence[str] = ()) -> None:
+    """Refuse a parent ring that is unknown, or that no STRUCTURE typed on the command line can use.
+
+    Parameters
+    ----------
+    ring
+        Parent ring asked for.
+    arguments
+        STRUCTURE arguments; what files and standard input hold is not known yet.
+
+    Raises
+    ------
+    UsageError
+        If so.
+    """
+    if ring == PARENT:
+        return
+    from ringstrain.structure.shorthand import PARENT_RINGS
+
+    if ring not in PARENT_RINGS:
+        raise UsageError(f"No ring is called {ring!r}.", f"Choose one of {', '.join(PARENT_RINGS)}.")
+    if not arguments or any(argument == "-" or _is_file_name(argument) for argument in arguments):
+        return
+    typed = [Record(text=argument) for argument in arguments]
+    if not any(record.takes_ring for record in typed):
+        raise _idle_ring(ring, typed[0])
+
+
+def _idle_ring(ring: str, record: Record) -> UsageError:
+    """A parent ring for a structure that brings its own."""
+    what = "a molfile" if record.is_block else repr(record.text)
+    return UsageError(
+        f"--ring {ring} is the parent ring of a shorthand, and {what} is none.",
+        "Leave --ring out, or write the groups as a shorthand such as '2b-Me 4b-OH'.",
+    )
 
 
 def nothing_given(arguments: Sequence[str] | None) -> bool:
