@@ -119,6 +119,21 @@ def test_medium_all_puts_four_columns_side_by_side(monkeypatch: pytest.MonkeyPat
     assert [head.split()[1:] for head in heads] == [["gas", "nonpolar", "polar", "protic"]]
 
 
+@pytest.mark.parametrize("width", ["50", "60", "80"])
+@pytest.mark.parametrize("text", ["1b-OMe 2a-Br", "1b-CO2Et 2a-iPr 3b-iPr"])
+def test_medium_all_breaks_no_name_in_a_narrow_terminal(
+    text: str, width: str, monkeypatch: pytest.MonkeyPatch, capsys: Capture
+) -> None:
+    monkeypatch.setenv("COLUMNS", width)
+    assert run(["chairs", text, "--medium", "all", "--format", "table"]) == 0
+    narrow = capsys.readouterr().out
+    monkeypatch.setenv("COLUMNS", "140")
+    run(["chairs", text, "--medium", "all", "--format", "table"])
+    # a table mixes its columns line by line, but a word that was whole stays whole
+    words = {word for word in capsys.readouterr().out.split() if word.strip(",:").isalpha()}
+    assert not words - set(narrow.split())
+
+
 def test_a_named_solvent_is_reported_by_its_name(capsys: Capture) -> None:
     assert run(["chairs", TRANS_DICHLORO, "--medium", "CCl4", "--json"]) == 0
     (document,) = _documents(capsys.readouterr().out)

@@ -93,6 +93,19 @@ def test_chairs_shows_drawings_when_asked(capsys: Capture) -> None:
     assert run(["chairs", "1b-Me", "--draw", "--json"]) == 2
 
 
+@pytest.mark.parametrize("width", [50, 60, 80])
+@pytest.mark.parametrize("command", [["draw"], ["chairs", "--draw"]])
+@pytest.mark.parametrize("look", [[], ["--ascii"]])
+def test_captions_keep_to_a_narrow_terminal(
+    width: int, command: list[str], look: list[str], monkeypatch: pytest.MonkeyPatch, capsys: Capture
+) -> None:
+    monkeypatch.setenv("COLUMNS", str(width))
+    assert run([*command, "1b-tBu 3a-OH", *look]) == 0
+    text = capsys.readouterr().out
+    assert "regime additive" in " ".join(text.split())
+    assert max(map(len, text.splitlines())) <= width
+
+
 def test_a_c_locale_gets_a_drawing_too() -> None:
     code = "from ringstrain.cli import main; main()"
     environment = {"PATH": "/usr/bin:/bin", "LC_ALL": "C", "PYTHONUTF8": "0", "PYTHONCOERCECLOCALE": "0"}

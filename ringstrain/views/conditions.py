@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Sequence
 from typing import TYPE_CHECKING
 
@@ -63,28 +64,78 @@ def _by_medium(answers: Sequence[Analysis], place: int, look: Look) -> Iterator[
         for analysis, result in zip(answers, results, strict=True):
             yield look.text(f"{analysis.medium}: {headline(result, analysis.conditions, look)}", "bold")
     yield Text()
-    table = new_table(look)
-    table.add_column("state", overflow="fold")
-    for analysis in answers:
-        table.add_column(look.text(analysis.medium), justify="right", overflow="fold")
     shown: dict[tuple[object, ...], tuple[SystemResult, State]] = {}
     for result in results:
         for state in result.states:
             shown.setdefault(_shape_key(state), (result, state))
+    rows = []
     for key, (owner, sample) in list(shown.items())[:6]:
         cells = []
         for result in results:
             match = next((s for s in result.states if _shape_key(s) == key), None)
-            cells.append(look.text("\N{EN DASH}" if match is None else _cell(match, look)))
+            cells.append("\N{EN DASH}" if match is None else _cell(match, look))
         words = describe(owner, sample)
-        table.add_row(look.text(f"{sample.shapes[0]}: {words}" if words else sample.shapes[0]), *cells)
-    table.add_section()
+        rows.append((f"{sample.shapes[0]}: {words}" if words else sample.shapes[0], *cells))
     equilibria = [result.equilibrium for result in results]
-    gap = look.text(f"\N{GREEK CAPITAL LETTER DELTA}G, {look.unit}")
-    table.add_row(gap, *(look.text(_gap(e, look)) for e in equilibria))
-    table.add_row(look.text("K"), *(look.text(_k(e)) for e in equilibria))
+    gap = f"\N{GREEK CAPITAL LETTER DELTA}G, {look.unit}"
+    summary = [(gap, *(_gap(e, look) for e in equilibria)), ("K", *(_k(e) for e in equilibria))]
+    head = ("state", *(analysis.medium for analysis in answers))
+    widths: list[int | None] = [None] * len(head)
+    names: list[str] = []
+    if narrow := _narrow_widths([head, *rows, *summary], look):
+        rows = [(name, *map(_in_two, cells, narrow[1:])) for name, *cells in rows]
+        widths = [*narrow]
+        if narrow[0] < _longest_word([*rows, *summary], look):
+            # the names go below: a number and the unit of the last rows need little room
+            names = [name for name, *_ in rows]
+            rows = [(str(number), *cells) for number, (_, *cells) in enumerate(rows, 1)]
+            widths = [_longest_word([head, *rows, *summary], look), *[None] * len(answers)]
+    table = new_table(look)
+    for place, name in enumerate(head):
+        table.add_column(
+            look.text(name),
+            justify="right" if place else "left",
+            overflow="fold",
+            width=widths[place],
+        )
+    for row in rows:
+        table.add_row(*map(look.text, row))
+    table.add_section()
+    for row in summary:
+        table.add_row(*map(look.text, row))
     yield table
+    for number, name in enumerate(names, 1):
+        yield look.text(f"{number}  {name}")
     yield look.text(f"Cells: energy ({look.unit}), population; \N{PLUS-MINUS SIGN} 95 %.", "dim")
+
+
+def _narrow_widths(rows: Sequence[tuple[str, ...]], look: Look) -> list[int]:
+    """Widths of the columns where the whole cells do not fit beside a word of the first one, else nothing.
+
+    Left alone, a narrow table gives all columns the same room, and breaks long words of the first one.
+    """
+    columns = list(zip(*rows, strict=True))
+    gaps = 2 * (len(columns) - 1)
+    whole = [max(len(look.say(text)) for text in column) for column in columns[1:]]
+    if _longest_word(rows, look) + sum(whole) + gaps <= look.width:
+        return []
+    narrow = [max(len(part) for text in column for part in _parts(look.say(text))) for column in columns[1:]]
+    return [look.width - sum(narrow) - gaps, *narrow]
+
+
+def _longest_word(rows: Sequence[tuple[str, ...]], look: Look) -> int:
+    """Characters of the longest word in the first column."""
+    return max(len(word) for name, *_ in rows for word in look.say(name).split())
+
+
+def _in_two(cell: str, width: int) -> str:
+    """A cell that is too wide, the share below the energy."""
+    return cell if len(cell) <= width else cell.replace(", ", ",\n")
+
+
+def _parts(text: str) -> list[str]:
+    """A cell at the blanks where it may break: not within a percentage or an uncertainty."""
+    return re.split(r"(?<!\N{PLUS-MINUS SIGN})(?<!\+/-) (?!%)", text)
 
 
 def _cell(state: State, look: Look) -> str:

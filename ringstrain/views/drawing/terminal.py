@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import textwrap
 from collections.abc import Iterator, Sequence
 
 from ringstrain.analysis import Analysis, State, SystemResult
@@ -70,11 +71,16 @@ def states_text(
     scenes = [draw_state(result, state, wishes) for state in states]
     parts = []
     for state, scene in zip(states, scenes):
-        parts.append(look.say("; ".join(caption_lines(state, look))) + "\n" + to_text(scene, look))
+        parts.append(_filled("; ".join(caption_lines(state, look)), look) + to_text(scene, look))
     if result.equilibrium is not None:
-        parts.append(look.say(equilibrium_line(result, result.equilibrium, analysis.temperature_K, look)) + "\n")
+        parts.append(_filled(equilibrium_line(result, result.equilibrium, analysis.temperature_K, look), look))
     key = ", ".join(_key(scenes, look))
-    return "\n".join([*parts, f"{key}\n"] if key else parts)
+    return "\n".join([*parts, _filled(key, look)] if key else parts)
+
+
+def _filled(text: str, look: Look) -> str:
+    """A sentence in lines of the width, each ended by a newline."""
+    return textwrap.fill(look.say(text), look.width, break_long_words=False, break_on_hyphens=False) + "\n"
 
 
 def _key(scenes: Sequence[Scene], look: Look) -> Iterator[str]:
