@@ -6,7 +6,9 @@ import csv
 import gzip
 import io
 import zlib
+from collections import deque
 from collections.abc import Iterator, Sequence
+from itertools import islice
 from pathlib import Path
 from types import TracebackType
 from typing import IO, TextIO
@@ -18,6 +20,7 @@ from ringstrain.structure.shorthand import is_remark, is_shorthand
 SUFFIXES = (".smi", ".csv", ".tsv", ".sdf")
 _SMILES_NAMES = ("smiles", "structure", "input", "canonical_smiles", "mol")
 _ID_NAMES = ("id", "name", "compound", "title", "identifier", "key")
+_OPEN_QUOTE = "A quotation mark is opened in this line and never closed."
 #: A molfile block longer than this is a torn file [lines].
 _MAX_BLOCK_LINES = 20_000
 
@@ -101,24 +104,39 @@ class RecordReader:
 
     def _cells(self, stream: TextIO) -> Iterator[BatchRecord]:
         """Records of a table with a header."""
-        counted = _Counted(stream)
-        rows = csv.reader(counted, delimiter="\t" if self._kind == ".tsv" else ",")
-        header = next(rows, None)
+        lines = _Lines(stream)
+        rows = csv.reader(lines, delimiter=self._delimiter(lines))
+        try:
+            header = next(rows, None)
+        except csv.Error:
+            header = [""]
         if header is None:  # an empty file holds no record, whatever its kind
             return
         place, name_place = self._columns(header)
         while True:
-            start = counted.number + 1
+            start = lines.begin_row()
             try:
                 row = next(rows)
             except StopIteration:
                 return
             except csv.Error as error:
-                yield BatchRecord(line=start, id="", text="", fault=f"The line is no row of a table ({error}).")
+                row, fault = [], f"The line is no row of a table ({error})."
+            else:
+                fault = _OPEN_QUOTE if lines.is_at_end else ""
+            if fault:
+                if lines.step_back():  # the lines it swallowed are rows of their own
+                    fault = _OPEN_QUOTE
+                rows = csv.reader(lines, rows.dialect)
+                yield BatchRecord(line=start, id="", text="", fault=fault)
                 continue
             text = row[place].strip() if place < len(row) else ""
             name = row[name_place].strip() if name_place is not None and name_place < len(row) else ""
             yield BatchRecord(line=start, id=name, text=text)
+
+    def _delimiter(self, lines: _Lines) -> str:
+        """What parts the cells: a tab, a comma, or what a spreadsheet wrote instead."""
+        first = lines.peek()
+        return "\t" if self._kind == ".tsv" else next((sign for sign in ",;\t" if sign in first), ",")
 
     def _columns(self, header: Sequence[str]) -> tuple[int, int | None]:
         """Where the structures and their names stand."""
@@ -144,20 +162,49 @@ class RecordReader:
         return found, place(wanted_id, _ID_NAMES)
 
 
-class _Counted:
-    """Lines of a stream, counted as they go."""
+class _Lines:
+    """Lines of a stream, counted as they go; those of the present row can be taken again.
+
+    A reader of tables asks for a further line within a row only while a quotation mark is open.  When the stream
+    ends then, it hands out what it has: a single stray mark would cost every record behind it.
+    """
 
     def __init__(self, stream: TextIO) -> None:
         self._stream = stream
-        self.number = 0
+        self._ahead: deque[str] = deque()
+        self._row: list[str] = []
+        self._number = 0
+        self.is_at_end = False
 
-    def __iter__(self) -> _Counted:
+    def __iter__(self) -> _Lines:
         return self
 
     def __next__(self) -> str:
-        line = next(self._stream)
-        self.number += 1
+        line = self._ahead.popleft() if self._ahead else next(self._stream, None)
+        if line is None:
+            self.is_at_end = True
+            raise StopIteration
+        self._number += 1
+        self._row.append(line)
         return line
+
+    def peek(self) -> str:
+        """The next line, which stays; empty at the end."""
+        if not self._ahead:
+            self._ahead.extend(islice(self._stream, 1))
+        return self._ahead[0] if self._ahead else ""
+
+    def begin_row(self) -> int:
+        """A new row; the line it starts at, from 1."""
+        self._row.clear()
+        return self._number + 1
+
+    def step_back(self) -> bool:
+        """Take back every line of the present row but the first; True when there are any."""
+        self._ahead.extendleft(reversed(self._row[1:]))
+        self._number -= len(self._row) - 1
+        self.is_at_end = False
+        return len(self._row) > 1
 
 
 def _lines(stream: TextIO) -> Iterator[BatchRecord]:

@@ -153,6 +153,36 @@ def test_a_comment_is_no_record_but_counts_as_a_line(tmp_path: Path) -> None:
         assert [(r.line, r.id, r.text) for r in reader] == [(2, "", "CC1CCCCC1"), (3, "", ""), (5, "b", "OC1CCCCC1")]
 
 
+@pytest.mark.parametrize("rows_behind", [3, 20_000], ids=["to the end", "beyond the longest cell"])
+def test_a_quotation_mark_left_open_costs_its_own_row_only(rows_behind: int, tmp_path: Path) -> None:
+    path = tmp_path / "in.csv"
+    rows = ["CC1CCCCC1,first", 'CC1CCCCC1,"torn', *("OC1CCCCC1,behind" for _ in range(rows_behind))]
+    path.write_text("smiles,name\n" + "\n".join(rows), encoding="utf-8", newline="")
+    with RecordReader(path) as reader:
+        found = list(reader)
+    assert [record.line for record in found] == list(range(2, len(rows) + 2))
+    assert [record.line for record in found if record.fault] == [3]
+    assert "never closed" in found[1].fault
+    assert found[-1].id == "behind"
+
+
+def test_cells_may_hold_line_ends_and_quotation_marks(tmp_path: Path) -> None:
+    path = tmp_path / "in.csv"
+    path.write_text(
+        'smiles,id\nCC1CCCCC1,"a\nb"\nCC1CCCCC1,"5"" c"\nCC1CCCCC1,5" d\nCC1CCCCC1,"e"', encoding="utf-8", newline=""
+    )
+    with RecordReader(path) as reader:
+        assert [(r.line, r.id) for r in reader] == [(2, "a\nb"), (4, '5" c'), (5, '5" d'), (6, "e")]
+
+
+@pytest.mark.parametrize("sign", [",", ";", "\t"])
+def test_a_csv_may_be_parted_as_spreadsheets_do(sign: str, tmp_path: Path) -> None:
+    path = tmp_path / "in.csv"
+    path.write_text(f"name{sign}smiles\r\nx{sign}CC1CCCCC1\r\n", encoding="utf-8-sig", newline="")
+    with RecordReader(path) as reader:
+        assert [(r.id, r.text) for r in reader] == [("x", "CC1CCCCC1")]
+
+
 @pytest.mark.parametrize("name", ["in.smi", "in.csv", "in.tsv", "in.sdf", "comments.smi"])
 def test_a_file_without_records_is_named(name: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     (tmp_path / name).write_text("# nothing yet\n" if name == "comments.smi" else "", encoding="utf-8", newline="")
