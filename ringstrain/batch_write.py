@@ -85,8 +85,8 @@ def open_writer(path: str | Path, columns: Sequence[str], kept: Kept | None = No
     except OSError as error:
         raise InputError(f"The file {str(path)!r} cannot be written: {error.strerror}.", "Check the path.") from None
     if kept is None or not kept.rows:
-        stream.write(_header(kind, columns))
-    return _TextWriter(stream, kind)
+        stream.write(_header(kind, columns))  # into the buffer: a full disk shows with the rows
+    return _TextWriter(stream, kind, path)
 
 
 def _kind(path: str | Path) -> str:
@@ -101,6 +101,11 @@ def _kind(path: str | Path) -> str:
     if not kind or (_is_packed(path) and kind == ".parquet"):
         raise UsageError(f"{str(path)!r} is no output we can write.", f"Use one of {', '.join(SUFFIXES)}.")
     return kind
+
+
+def is_resumable(path: str | Path) -> bool:
+    """True for an output that a later run can go on with."""
+    return not _is_packed(path) and _kind(path) != ".parquet"
 
 
 def _is_packed(path: str | Path) -> bool:
@@ -135,7 +140,7 @@ def find_rows(path: str | Path, columns: Sequence[str]) -> Kept:
         If the file does not begin as ours do, or cannot be read.
     """
     kind = _kind(path)
-    if _is_packed(path) or kind == ".parquet":
+    if not is_resumable(path):
         raise UsageError(
             "A .gz or .parquet output cannot be resumed.", "Write .csv, .tsv, .jsonl or .sdf, and pack it afterwards."
         )
@@ -310,20 +315,45 @@ def _row_bytes(row: Row, kind: str) -> bytes:
 class _TextWriter:
     """Rows as text, each handed to the system whole."""
 
-    def __init__(self, stream: IO[bytes], kind: str) -> None:
+    def __init__(self, stream: IO[bytes], kind: str, path: str | Path) -> None:
         self._stream = stream
         self._kind = kind
+        self._path = path
 
     def write(self, row: Row) -> None:
-        """One row."""
-        self._stream.write(_row_bytes(row, self._kind))
+        """One row.
+
+        Raises
+        ------
+        InputError
+            If the disk is full or gone.
+        """
+        try:
+            self._stream.write(_row_bytes(row, self._kind))
+        except OSError as error:
+            raise _unwritable(self._path, error) from None
 
     def close(self) -> None:
-        """The end of the file."""
+        """The end of the file.
+
+        Raises
+        ------
+        InputError
+            If the disk is full or gone.
+        """
         inner = getattr(self._stream, "fileobj", None)
-        self._stream.close()
-        if inner is not None:
-            inner.close()
+        try:
+            self._stream.close()
+            if inner is not None:
+                inner.close()
+        except OSError as error:
+            raise _unwritable(self._path, error) from None
+
+
+def _unwritable(path: str | Path, error: OSError) -> InputError:
+    """A file that takes no more."""
+    step = "Make room, then go on with --resume." if is_resumable(path) else "Make room and start again."
+    return InputError(f"The file {str(path)!r} cannot be written on: {error.strerror}.", step)
 
 
 class _ParquetWriter:

@@ -292,6 +292,43 @@ def test_a_resumed_run_has_the_bytes_of_an_unbroken_one(mixed: Path, tmp_path: P
         assert torn.read_bytes() == wanted, cut
 
 
+@pytest.mark.parametrize(("suffix", "says"), [(".csv", True), (".csv.gz", False)])
+def test_a_stopped_run_says_how_to_go_on_and_does(
+    suffix: str,
+    says: bool,
+    mixed: Path,
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    def stopped(chunk: tuple[BatchRecord, ...], settings: Settings) -> list[Row]:
+        if chunk[0].line == 5:
+            raise KeyboardInterrupt
+        return [answer(record, settings) for record in chunk]
+
+    out = tmp_path / f"out{suffix}"
+    with monkeypatch.context() as patched:
+        patched.setattr("ringstrain.batch_rows.answer_chunk", stopped)
+        assert batch(mixed, "-o", out, "-q") == 130
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert ("--resume" in captured.err) is says
+    if says:
+        assert len(rows_of(out)) == 4
+        assert batch(mixed, "-o", out, "-q", "--resume") == 0
+        assert [row["status"] for row in rows_of(out)] == STATUSES
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs a device that is always full")
+@pytest.mark.parametrize("suffix", [".csv", ".jsonl.gz", ".sdf"])
+def test_a_full_disk_is_no_bug_of_ours(
+    suffix: str, mixed: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / f"out{suffix}").symlink_to("/dev/full")
+    assert batch(mixed, "-o", tmp_path / f"out{suffix}", "-q") == 3
+    assert "Make room" in capsys.readouterr().err
+
+
 def test_resuming_without_an_earlier_run_begins(mixed: Path, tmp_path: Path) -> None:
     assert batch(mixed, "-o", tmp_path / "out.csv", "-q", "--resume") == 0
     assert len(rows_of(tmp_path / "out.csv")) == len(STATUSES)

@@ -121,6 +121,16 @@ def test_a_closed_pipe_is_left_quietly(form: str, tmp_path: Path) -> None:
     assert (process.returncode, err) == (0, b"")
 
 
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs a device that is always full")
+@pytest.mark.parametrize("arguments", [["chairs", "1b-Me"], ["patterns", "Me"], ["chairs", "--help"], ["--version"]])
+def test_a_full_disk_is_no_bug_of_ours(arguments: list[str]) -> None:
+    with open("/dev/full", "wb") as full:
+        process = subprocess.run([*PROGRAM, *arguments], stdout=full, stderr=subprocess.PIPE, timeout=60)
+    assert process.returncode == 3
+    assert b"Make room" in process.stderr
+    assert process.stderr.count(b"\n") == 2
+
+
 @pytest.mark.parametrize(
     ("arguments", "words"),
     [

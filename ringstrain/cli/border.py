@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import os
 import sys
 from collections.abc import Sequence
@@ -10,12 +11,14 @@ from typing import TYPE_CHECKING, Any
 import typer
 
 from ringstrain.cli.console import make_console, make_look, prepare_streams, silence
-from ringstrain.errors import RingstrainError, TableError, UsageError
+from ringstrain.errors import InputError, RingstrainError, TableError, UsageError
 
 if TYPE_CHECKING:
     from ringstrain.cli.common import Output
 
 OUR_BUG, USAGE, INTERRUPTED = 1, 2, 130
+#: What the system says when a disk takes no more.
+_FULL = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG)
 HELP_NAMES = ("-h", "--help")
 _COMPLETION_VARIABLE = "_RINGSTRAIN_COMPLETE"
 
@@ -47,6 +50,12 @@ def run(arguments: Sequence[str]) -> int:
     except KeyboardInterrupt:
         _say(["", "Interrupted."])
         return INTERRUPTED
+    except OSError as error:
+        if error.errno not in _FULL:
+            raise
+        silence(sys.stdout)
+        _say([f"The answer cannot be written: {error.strerror}.", "Make room, or send it elsewhere."])
+        return InputError.exit_code
     return code
 
 
@@ -80,6 +89,8 @@ def _run(arguments: list[str]) -> int:
     except (BrokenPipeError, KeyboardInterrupt):
         raise
     except Exception as error:
+        if isinstance(error, OSError) and error.errno in _FULL:
+            raise
         if hasattr(error, "format_message"):
             return _usage(error)
         if debug:

@@ -110,7 +110,7 @@ def batch(
         raise UsageError("Input and output are the same file.", "Write to another one.")
     from ringstrain.batch_read import RecordReader
     from ringstrain.batch_rows import EXIT_CODES, answer_chunk, lost_row
-    from ringstrain.batch_write import Kept, find_rows, open_writer
+    from ringstrain.batch_write import Kept, find_rows, is_resumable, open_writer
     from ringstrain.crew import run_in_order
 
     with RecordReader(file, smiles_column=smiles_column, id_column=id_column) as reader:
@@ -131,7 +131,12 @@ def batch(
                 chunk=chunk,
                 window=window,
             )
-            statuses = _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet) | kept.statuses
+            try:
+                statuses = _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet) | kept.statuses
+            except KeyboardInterrupt:
+                if is_resumable(output):
+                    remark("The same command with --resume goes on from here.")
+                raise
         if not seen:
             remark(f"The file {file!r} holds no record, and {output!r} no row. Check that it is the right file.")
         elif ring != PARENT and not source.has_shorthand:
