@@ -45,6 +45,21 @@ def test_the_table_shows_the_pattern_and_what_was_gone_through(capsys: pytest.Ca
     assert text.isascii()
 
 
+@pytest.mark.parametrize("width", ["50", "60", "72", "80", "100"])
+@pytest.mark.parametrize("look", [(), ("--ascii", "--units", "kJ")])
+def test_a_narrow_terminal_shows_every_pattern_whole(
+    width: str, look: tuple[str, ...], monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setenv("COLUMNS", width)
+    assert patterns("CO2Et", "iPr", "OMe", "--top", "3", "--format", "table", *look) == 0
+    text = capsys.readouterr().out
+    assert max(map(len, text.splitlines())) <= int(width)
+    assert "\N{HORIZONTAL ELLIPSIS}" not in text
+    words = " ".join(text.split()).replace(";", "").split()
+    for pattern in enumerate_patterns(["CO2Et", "iPr", "OMe"], top=3):
+        assert set(pattern.pattern.split()) <= set(words)
+
+
 def test_a_gap_is_in_the_unit_that_was_asked_for(capsys: pytest.CaptureFixture[str]) -> None:
     assert patterns("Me", "OH", "--gap", ">=2", "--smiles") == 0
     in_kcal = capsys.readouterr().out

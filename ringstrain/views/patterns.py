@@ -15,6 +15,8 @@ from ringstrain.views.plain import number, row
 if TYPE_CHECKING:
     from rich.console import RenderableType
 
+_HEADS = ("", "pattern", "axial in the favoured form", "G rel.", "\N{GREEK CAPITAL LETTER DELTA}G", "K", "one shape")
+
 
 def patterns_header(units: Units) -> str:
     """Column names of :func:`pattern_row`."""
@@ -80,25 +82,49 @@ def patterns_view(patterns: Sequence[Pattern], tally: Tally, look: Look, *, enan
     from rich.console import Group
     from rich.table import Table
 
-    table = Table(box=look.box(), pad_edge=False, padding=(0, 2, 0, 0))
-    table.add_column("", justify="right", no_wrap=True)
-    table.add_column("pattern", overflow="fold")
-    table.add_column("axial in the favoured form", overflow="fold")
-    for name in ("G rel.", look.say("\N{GREEK CAPITAL LETTER DELTA}G"), "K", "one shape"):
-        table.add_column(name, justify="right", no_wrap=True)
     known = [p.energy_kcal for p in patterns if p.energy_kcal is not None]
     lowest = min(known, default=0.0)
-    for p in patterns:
-        table.add_row(
+    rows = [
+        (
             str(p.rank),
-            look.text(p.pattern),
-            look.text(_axial_words(p)),
-            look.text("?" if p.energy_kcal is None else look.energy(p.energy_kcal - lowest)),
-            look.text(_gap_words(p, look)),
-            look.text("-" if p.K is None else constant(p.K)),
-            look.text("?" if p.population is None else percent(p.population)),
+            p.pattern,
+            _axial_words(p),
+            "?" if p.energy_kcal is None else look.energy(p.energy_kcal - lowest),
+            _gap_words(p, look),
+            "-" if p.K is None else constant(p.K),
+            "?" if p.population is None else percent(p.population),
         )
-    return Group(table, *(look.text(sentence) for sentence in remarks(patterns, tally, look, enantiomers=enantiomers)))
+        for p in patterns
+    ]
+    sentences = [look.text(text) for text in remarks(patterns, tally, look, enantiomers=enantiomers)]
+    if not _fits(rows, look):
+        return Group(*(look.text(text) for cells in rows for text in _stacked(cells)), look.text(""), *sentences)
+    table = Table(box=look.box(), pad_edge=False, padding=(0, 2, 0, 0))
+    table.add_column("", justify="right", no_wrap=True)
+    table.add_column(_HEADS[1], overflow="fold")
+    table.add_column(_HEADS[2], overflow="fold")
+    for name in _HEADS[3:]:
+        table.add_column(look.text(name), justify="right", no_wrap=True)
+    for cells in rows:
+        table.add_row(*map(look.text, cells))
+    return Group(table, *sentences)
+
+
+def _fits(rows: Sequence[tuple[str, ...]], look: Look) -> bool:
+    """True when the numbers leave room for the words; a table without it would drop its patterns."""
+    columns = list(zip(_HEADS, *rows, strict=True))
+    numbers = sum(max(len(look.say(text)) for text in column) for column in (columns[0], *columns[3:]))
+    words = sum(max(len(word) for text in column for word in look.say(text).split()) for column in columns[1:3])
+    return numbers + words + 3 * len(_HEADS) <= look.width
+
+
+def _stacked(cells: tuple[str, ...]) -> tuple[str, str]:
+    """One pattern in two sentences."""
+    rank, pattern, axial, *numbers = cells
+    return (
+        f"{rank}  {pattern}; axial: {axial}",
+        "   " + ", ".join(f"{name} {value}" for name, value in zip(_HEADS[3:], numbers, strict=True)),
+    )
 
 
 def _axial_words(pattern: Pattern) -> str:
@@ -115,9 +141,8 @@ def _gap_words(pattern: Pattern, look: Look) -> str:
     """The gap with its 95 % interval, or why there is none."""
     if pattern.dG_kcal is None or pattern.uncertainty_kcal is None:
         return pattern.bound or "one form"
-    plus_minus = look.say("\N{PLUS-MINUS SIGN}")
     start = "at least " if pattern.bound == "at least" else ""
-    return f"{start}{look.energy(pattern.dG_kcal)} {plus_minus} {look.energy(Z95 * pattern.uncertainty_kcal)}"
+    return f"{start}{look.energy(pattern.dG_kcal)} \N{PLUS-MINUS SIGN} {look.energy(Z95 * pattern.uncertainty_kcal)}"
 
 
 def remarks(patterns: Sequence[Pattern], tally: Tally, look: Look, *, enantiomers: bool) -> tuple[str, ...]:
