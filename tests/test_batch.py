@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import gzip
+import io
 import json
 import multiprocessing
 import os
@@ -242,6 +243,29 @@ def test_the_summary_counts_by_status(mixed: Path, tmp_path: Path, capsys: pytes
     captured = capsys.readouterr()
     assert captured.out == ""
     assert "8 records: 4 ok, 3 input, 1 out-of-scope" in captured.err
+
+
+@pytest.mark.parametrize("resumed", [False, True])
+def test_what_is_left_counts_the_work_and_not_the_reading(
+    resumed: bool, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    class Terminal(io.StringIO):
+        def isatty(self) -> bool:
+            return True
+
+    clock = iter(range(10_000))
+    path, out, screen = tmp_path / "in.smi", tmp_path / "out.csv", Terminal()
+    path.write_text("CC1CCCCC1\n" * 40, encoding="utf-8", newline="")
+    if resumed:
+        batch(path, "-o", out, "-q")
+        out.write_bytes(b"".join(out.read_bytes().splitlines(keepends=True)[:11]))
+    monkeypatch.setattr("ringstrain.cli.cmd_batch.time.monotonic", lambda: next(clock))
+    monkeypatch.setattr("sys.stderr", screen)
+    batch(path, "-o", out, *(["--resume"] if resumed else []))
+    shown = [text for text in screen.getvalue().split("\r") if "left" in text]
+    # the whole file is read before the first answer; one tick of the clock is a record
+    assert "30 records, 1 a second, 10 s left" in shown
+    assert len(shown) == (29 if resumed else 39)
 
 
 @pytest.mark.parametrize("suffix", [".csv", ".tsv", ".jsonl"])

@@ -132,7 +132,7 @@ def batch(
                 window=window,
             )
             try:
-                statuses = _write_all(rows, writer.write, reader, done=kept.rows, quiet=quiet) | kept.statuses
+                statuses = _write_all(rows, writer.write, source, done=kept.rows, quiet=quiet) | kept.statuses
             except KeyboardInterrupt:
                 if is_resumable(output):
                     remark("The same command with --resume goes on from here.")
@@ -145,16 +145,23 @@ def batch(
 
 
 class _Source:
-    """Records of a reader; remembers whether a parent ring could be of use to any."""
+    """Records of a reader; remembers how many, and whether a parent ring could be of use to any."""
 
     def __init__(self, reader: RecordReader) -> None:
         self._reader = reader
+        self._given = 0
         self.has_shorthand = False
+
+    @property
+    def expected(self) -> float:
+        """Records of the whole file, judged from those so far; they are read ahead of the work."""
+        return self._given / self._reader.fraction if self._reader.fraction else 0.0
 
     def __iter__(self) -> Iterator[BatchRecord]:
         from ringstrain.structure.shorthand import is_shorthand
 
         for record in self._reader:
+            self._given += 1
             self.has_shorthand = self.has_shorthand or (not record.is_block and is_shorthand(record.text))
             yield record
 
@@ -267,13 +274,13 @@ def _open_cluster(address: str) -> Any:
 
 
 def _write_all(
-    rows: Iterator[Row], write: Callable[[Row], None], reader: RecordReader, *, done: int, quiet: bool
+    rows: Iterator[Row], write: Callable[[Row], None], source: _Source, *, done: int, quiet: bool
 ) -> frozenset[str]:
     """Write the rows, tell how far it is, sum up; every status there was."""
     from ringstrain.batch_rows import STATUSES
 
     tally = dict.fromkeys(STATUSES, 0)
-    progress = _Progress(reader, done=done, shown=not quiet and sys.stderr.isatty())
+    progress = _Progress(source, done=done, shown=not quiet and sys.stderr.isatty())
     try:
         for row in rows:
             write(row)
@@ -291,19 +298,19 @@ def _summary(tally: dict[str, int], done: int, seconds: float) -> str:
     total = sum(tally.values())
     parts = ", ".join(f"{count} {status}" for status, count in tally.items() if count) or "none"
     before = f" after {done} rows of an earlier run" if done else ""
-    return f"{total} records{before}: {parts}; {seconds:.1f} s, {total / seconds if seconds else 0:.0f} a second."
+    records = "1 record" if total == 1 else f"{total} records"
+    return f"{records}{before}: {parts}; {seconds:.1f} s, {total / seconds if seconds else 0:.0f} a second."
 
 
 class _Progress:
     """One line on standard error that is written over, from the second second on."""
 
-    def __init__(self, reader: RecordReader, *, done: int, shown: bool) -> None:
-        self._reader = reader
+    def __init__(self, source: _Source, *, done: int, shown: bool) -> None:
+        self._source = source
         self._shown = shown
         self._done = done
         self._count = 0
         self._start = self._next = time.monotonic()
-        self._from = 0.0
         self._next += 2 * _INTERVAL_s
         self._width = 0
 
@@ -319,12 +326,8 @@ class _Progress:
             return
         self._next = now + _INTERVAL_s
         rate = self._count / (now - self._start)
-        fraction = self._reader.fraction
-        left = (
-            f", {_duration((now - self._start) * (1 - fraction) / fraction)} left"
-            if 0 < fraction < 1 and not self._done
-            else ""
-        )
+        still = self._source.expected - self._done - self._count
+        left = f", {_duration(still / rate)} left" if still > 0 else ""
         text = f"{self._done + self._count} records, {rate:.0f} a second{left}"
         sys.stderr.write("\r" + text.ljust(self._width))
         sys.stderr.flush()
