@@ -3,14 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from operator import neg
 
 from ringstrain.billing import GroupMap
 from ringstrain.contacts import ContactKind
 from ringstrain.equilibrium import Equilibrium, Population, compare, mixture_energy, populations
 from ringstrain.errors import MissingValue
 from ringstrain.ledger import regime_of
-from ringstrain.provenance import combined_sigma
+from ringstrain.provenance import sigma_of
 from ringstrain.pyranose import chair_form, pyranose_order
 from ringstrain.remarks import remarks
 from ringstrain.results import SCHEMA, Analysis, Detail, State, SystemResult
@@ -179,7 +178,7 @@ def _sorted_forms(
 
 def _shape_key(shapes: Shapes) -> tuple[object, ...]:
     """A fixed order among states of equal energy."""
-    return tuple([(ring.shape, *map(neg, ring.torsions)) for ring in shapes.rings]), shapes.inverted
+    return tuple([ring.rank for ring in shapes.rings]), shapes.inverted
 
 
 def _letter(number: int) -> str:
@@ -195,10 +194,11 @@ def _letter(number: int) -> str:
 def _copies(priced: Sequence[Detail], groups: GroupMap) -> list[int | None]:
     """For each state the earlier state it is a symmetry copy of, if any."""
     copies: list[int | None] = [None] * len(priced)
+    energies = [detail.ledger.total_kcal for detail in priced]
     found: list[Operation] | None = None
     for i, detail in enumerate(priced):
         for j in range(i):
-            if copies[j] is not None or abs(priced[j].ledger.total_kcal - detail.ledger.total_kcal) > 1e-7:
+            if abs(energies[j] - energies[i]) > 1e-7 or copies[j] is not None:
                 continue
             if found is None:
                 found = operations(detail.shapes.geometry, groups)
@@ -309,7 +309,7 @@ def _make_state(id: str, detail: Detail, equivalent_to: str | None, share: Popul
         equivalent_to=equivalent_to,
         counts=tuple([(name, tally[kind]) for name, kind in _COUNTS.items()]),
         energy_kcal=ledger.total_kcal,
-        uncertainty_kcal=combined_sigma(ledger.terms),
+        uncertainty_kcal=sigma_of(ledger.variables),
         lower_bound=bool(ledger.unknown),
         regime=regime_of(ledger.lines),
         population=share.value if share else None,

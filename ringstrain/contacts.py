@@ -133,30 +133,33 @@ def _placed(state: Shapes) -> tuple[Placed, ...]:
     found = []
     for number, cards in enumerate(_cards(state.geometry)):
         table = _positions(state.rings[number].torsions)
-        for site, place, face, occupant, made in cards:
-            position = table[place][face]
-            card = made.get(position)
-            if card is None:
-                card = made[position] = Placed(site, position, occupant)
-            found.append(card)
+        for place, face, made in cards:
+            found.append(made[table[place][face]])
     return tuple(found)
 
 
-_Card = tuple[Site, int, int, Occupant, dict[Position, Placed]]
+_Card = tuple[int, int, dict[Position, Placed]]
 
 
 @lru_cache(maxsize=4)
 def _cards(geometry: Geometry) -> list[list[_Card]]:
-    """For each ring its sites with place and face, what stands there, and the records that states share."""
+    """For each ring the place and face of its sites, and their records by position."""
     return [
         [
-            (site, site.place, site.face, occupant_of(geometry.structure, site), {})
+            (site.place, site.face, _pointing(site, occupant_of(geometry.structure, site)))
             for sites in ring
             for site in sites
             if not _is_set_aside(geometry, site)
         ]
         for ring in geometry.sites
     ]
+
+
+@lru_cache(maxsize=16384)
+def _pointing(site: Site, occupant: Occupant) -> dict[Position, Placed]:
+    """The records of a site that many states and molecules share."""
+    positions: tuple[Position, ...] = ("axial", "equatorial", "isoclinal")
+    return {position: Placed(site, position, occupant) for position in positions}
 
 
 def _is_set_aside(geometry: Geometry, site: Site) -> bool:

@@ -12,10 +12,8 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from ringstrain.ledger import Ledger, Line, Regime, regime_of
-from ringstrain.provenance import Term
+from ringstrain.provenance import Variables
 from ringstrain.units import R_KCAL, Z95
-
-Variables = dict[tuple[str, str], tuple[float, float]]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -74,16 +72,6 @@ class Population:
     value: float
     low: float
     high: float
-
-
-def variables_of(terms: Sequence[Term]) -> Variables:
-    """Coefficient and standard uncertainty of each random variable [-, kcal/mol]."""
-    table: Variables = {}
-    for term in terms:
-        key = (term.row, term.group)
-        count, _ = table.get(key, (0.0, 0.0))
-        table[key] = (count + term.coefficient, term.sigma)
-    return table
 
 
 def weights(energies_kcal: Sequence[float], temperature_K: float) -> list[float]:
@@ -192,13 +180,12 @@ def populations(
     sigmas: dict[tuple[str, str], float] = {}
     counts: dict[tuple[str, str], list[float]] = {}
     for number, ledger in enumerate(ledgers):
-        for term in ledger.terms:
-            key = (term.row, term.group)
+        for key, (coefficient, sigma) in ledger.variables.items():
             row = counts.get(key)
             if row is None:
                 row = counts[key] = [0.0] * count
-                sigmas[key] = term.sigma
-            row[number] += term.coefficient
+                sigmas[key] = sigma
+            row[number] = coefficient
     for form in dict.fromkeys(sets):
         if form != sets[0]:
             members = [number for number in range(count) if sets[number] == form]
@@ -252,7 +239,7 @@ def compare(
     for group in (favoured, other):
         energies = [ledger.total_kcal for _, ledger in group]
         shares = weights(energies, temperature_K)
-        blend = blended([variables_of(ledger.terms) for _, ledger in group], shares)
+        blend = blended([ledger.variables for _, ledger in group], shares)
         sides.append((mixture_energy(energies, temperature_K), blend))
     dg = sides[1][0] - sides[0][0]
     lines = differing_lines(favoured[0][1], other[0][1])

@@ -172,16 +172,19 @@ class Geometry:
         """Heavy-atom paths across ring bonds whose four atoms do not all lie in one ring."""
         found = []
         rings_at = self._rings_at
+        around = self.structure.neighbours
         for (b, c), places in self.ring_bonds.items():
+            if len(around[b]) == 2 and len(around[c]) == 2:  # its one path runs along the ring
+                continue
             bond = self.structure.bond(b, c)
             if bond.order != 1 or bond.aromatic:
                 continue
             views = [self._view(number, place, b) for number, place in places]
             fronts = [a for a in views[0][2] if a != c and self._may_end_at(a, b)]
             backs = [d for d in views[0][3] if d != b and self._may_end_at(d, c)]
-            around = rings_at[b] & rings_at[c]
+            shared = rings_at[b] & rings_at[c]
             for a in fronts:
-                common = around & rings_at[a]
+                common = shared & rings_at[a]
                 for d in backs:
                     if a == d or (common and common & rings_at[d]):
                         continue

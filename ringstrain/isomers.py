@@ -22,9 +22,10 @@ from ringstrain.configurations import (
     stereogenic,
 )
 from ringstrain.epimers import invertible_centres
-from ringstrain.equilibrium import Variables, blended, difference_sigma, mixture_energy, variables_of, weights
+from ringstrain.equilibrium import blended, difference_sigma, mixture_energy, weights
 from ringstrain.errors import OutOfScope, UsageError
 from ringstrain.ledger import regime_of
+from ringstrain.provenance import Variables
 from ringstrain.ranking import Impossible, Isomer, Ranking
 from ringstrain.remarks import open_side_centres
 from ringstrain.ringgraph import RingSystem, find_ring_systems
@@ -246,7 +247,7 @@ def _ranked(entries: Sequence[Entry], book: PriceBook, free: tuple[int, ...] | N
         lowest.append(sum(part.energies[0] for part in entry.parts))
         blend: Variables = {}
         for part in entry.parts:
-            own = blended([variables_of(ledger.terms) for ledger in part.ledgers], weights(part.energies, temperature))
+            own = blended([ledger.variables for ledger in part.ledgers], weights(part.energies, temperature))
             for key, (count, sigma) in own.items():
                 blend[key] = (blend.get(key, (0.0, sigma))[0] + count, sigma)
         blends.append(blend)

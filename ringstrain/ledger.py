@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from ringstrain.contacts import Contact
-from ringstrain.provenance import KnownBy, Price, Term, combined_sigma, scaled, worst_known
+from ringstrain.provenance import KnownBy, Price, Term, Variables, combined_sigma, gathered, scaled, worst_known
 
 Rule = Literal[
     "A-value",
@@ -154,26 +154,21 @@ class Ledger:
         In the order they were charged.
     total_kcal
         Sum of the known subtotals [kcal/mol].
-    terms
+    variables
         Random variables of the total.
     """
 
     lines: tuple[Line, ...]
     total_kcal: float
-    terms: tuple[Term, ...]
+    variables: Variables
 
     @classmethod
     def of(cls, lines: Iterable[Line]) -> Ledger:
         """The ledger of these lines."""
         kept = tuple(lines)
-        terms: list[Term] = []
-        values: list[float] = []
-        for line in kept:
-            price, count = line.price, line.count
-            terms.extend(price.terms if count == 1.0 else scaled(price.terms, count))
-            if price.value_kcal is not None:
-                values.append(count * price.value_kcal)
-        return cls(lines=kept, total_kcal=math.fsum(values), terms=tuple(terms))
+        known = [line.count * line.price.value_kcal for line in kept if line.price.value_kcal is not None]
+        variables = gathered([(line.price.terms, line.count) for line in kept])
+        return cls(lines=kept, total_kcal=math.fsum(known), variables=variables)
 
     @property
     def unknown(self) -> tuple[Line, ...]:

@@ -16,6 +16,8 @@ from typing import Literal
 KnownBy = Literal["read", "recalled", "computed", "common practice", "yours"]
 #: From best to worst known; a sum is as well known as its worst part.
 KNOWN_BY_ORDER: tuple[KnownBy, ...] = ("yours", "read", "recalled", "common practice", "computed")
+#: Coefficient and standard uncertainty of each random variable [-, kcal/mol], by table row and group.
+Variables = dict[tuple[str, str], tuple[float, float]]
 Medium = Literal["gas", "nonpolar", "polar", "protic"]
 MEDIA: tuple[Medium, ...] = ("gas", "nonpolar", "polar", "protic")
 
@@ -116,13 +118,26 @@ class Price:
 
 def combined_sigma(terms: Iterable[Term]) -> float:
     """Standard uncertainty of a sum of terms [kcal/mol]: like variables add before they are squared."""
-    counts: dict[tuple[str, str], float] = {}
-    sigmas: dict[tuple[str, str], float] = {}
-    for term in terms:
-        key = term.row, term.group
-        counts[key] = counts.get(key, 0.0) + term.coefficient
-        sigmas.setdefault(key, term.sigma)
-    return math.sqrt(sum([(count * sigmas[key]) ** 2 for key, count in counts.items()]))
+    return sigma_of(gathered([(terms, 1.0)]))
+
+
+def gathered(parts: Iterable[tuple[Iterable[Term], float]]) -> Variables:
+    """Variables of terms, each part counted so many times [-]."""
+    table: Variables = {}
+    for terms, factor in parts:
+        for term in terms:
+            key = term.row, term.group
+            before = table.get(key)
+            if before is None:
+                table[key] = (term.coefficient * factor, term.sigma)
+            else:
+                table[key] = (before[0] + term.coefficient * factor, before[1])
+    return table
+
+
+def sigma_of(variables: Variables) -> float:
+    """Standard uncertainty of a sum of variables [kcal/mol]."""
+    return math.sqrt(sum([(count * sigma) ** 2 for count, sigma in variables.values()]))
 
 
 def scaled(terms: Iterable[Term], factor: float) -> tuple[Term, ...]:

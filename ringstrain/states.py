@@ -7,7 +7,8 @@ they share within 35 degrees; a search ring by ring finds the few combinations t
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from operator import neg
 from typing import Literal
 
 from ringstrain.errors import OutOfScope
@@ -35,10 +36,16 @@ class RingShape:
         Its name.
     torsions
         Endocyclic torsions by bond [degree].
+    rank
+        Puts shapes into a fixed order.
     """
 
     shape: Shape
     torsions: Torsions
+    rank: tuple[object, ...] = field(init=False, repr=False, compare=False)
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "rank", (self.shape, *map(neg, self.torsions)))
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,8 +6,9 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from ringstrain.equilibrium import Variables, differing_lines, variables_of, weights
+from ringstrain.equilibrium import differing_lines, weights
 from ringstrain.ledger import regime_of
+from ringstrain.provenance import Variables
 from ringstrain.results import State, SystemResult
 from ringstrain.units import R_KCAL
 
@@ -99,7 +100,7 @@ def make_ensemble(result: SystemResult, temperature_K: float, model_terms: dict[
     reference = result.states[0].detail.ledger
     variables = []
     for state, form in zip(result.states, forms, strict=True):
-        own = variables_of(state.detail.ledger.terms)
+        own = state.detail.ledger.variables
         if form != forms[0]:
             regime = regime_of(differing_lines(reference, state.detail.ledger))
             own[("model", str(form))] = (1.0, model_terms.get(regime, 0.0))

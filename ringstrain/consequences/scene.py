@@ -11,7 +11,7 @@ from typing import Literal
 from ringstrain.analysis import Analysis, State, SystemResult, analyze
 from ringstrain.consequences.finding import Verdict
 from ringstrain.contacts import occupant_of
-from ringstrain.equilibrium import difference_sigma, mixture_energy, variables_of, weights
+from ringstrain.equilibrium import difference_sigma, mixture_energy, weights
 from ringstrain.errors import RingstrainError
 from ringstrain.geometry import ANTI, Geometry, Site, wrap
 from ringstrain.structure.read import read
@@ -125,7 +125,7 @@ class Scene:
 
     def cost_sigma(self, state: State) -> float:
         """Standard uncertainty of the cost [kcal/mol]."""
-        own, lowest = (variables_of(s.detail.ledger.terms) for s in (state, self.states[0]))
+        own, lowest = (s.detail.ledger.variables for s in (state, self.states[0]))
         return difference_sigma(own, lowest)
 
     def sigma_ln(self, state: State, *more: float) -> float:

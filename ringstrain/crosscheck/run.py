@@ -14,7 +14,7 @@ from ringstrain.crosscheck.remarks import method_notes, warnings_of
 from ringstrain.crosscheck.search import SAME_KCAL, Going, Method, Minimum, Search, original, search
 from ringstrain.crosscheck.shapes import Form
 from ringstrain.crosscheck.xtb import Xtb
-from ringstrain.equilibrium import difference_sigma, differing_lines, unknown_difference, variables_of
+from ringstrain.equilibrium import difference_sigma, differing_lines, unknown_difference
 from ringstrain.errors import OutOfScope
 from ringstrain.ledger import regime_of
 from ringstrain.structure.records import Structure
@@ -201,6 +201,6 @@ def ledger_gap(favoured: State, state: State, tables: Tables) -> tuple[float | N
     polar = regime == "polar"
     if unknown_difference(first, second):
         return None, None, polar
-    prices = difference_sigma(variables_of(first.terms), variables_of(second.terms))
+    prices = difference_sigma(first.variables, second.variables)
     model = tables.model_terms.get(regime, 0.0) if lines else 0.0
     return second.total_kcal - first.total_kcal, math.hypot(prices, model), polar

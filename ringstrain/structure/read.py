@@ -262,6 +262,8 @@ def _finish(structure: Structure) -> Structure:
         raise OutOfScope(
             f"The molecule has over {MAX_ATOMS} heavy atoms.", "Cut it down to the ring system and its neighbourhood."
         )
+    if structure.spans and "." not in structure.text:  # a SMILES in one piece
+        return structure
     parts = _fragments(structure)
     if len(parts) == 1:
         return structure

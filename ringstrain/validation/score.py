@@ -16,17 +16,16 @@ from typing import Literal
 
 from ringstrain.analysis import Analysis, State, SystemResult, analyze
 from ringstrain.equilibrium import (
-    Variables,
     blended,
     difference_sigma,
     differing_lines,
     mixture_energy,
     unknown_difference,
-    variables_of,
     weights,
 )
 from ringstrain.errors import InputError, OutOfScope
 from ringstrain.ledger import Ledger, Line, Regime, regime_of
+from ringstrain.provenance import Variables
 from ringstrain.symmetry import operations
 from ringstrain.tables import Tables
 from ringstrain.units import R_KCAL, Z95
@@ -194,7 +193,7 @@ def gather(states_by_system: Sequence[Sequence[State]], temperature_K: float, *,
             if statistics
             else math.fsum(share * e for share, e in zip(shares, energies, strict=True))
         )
-        for key, (count, sigma) in blended([variables_of(ledger.terms) for ledger in ledgers], shares).items():
+        for key, (count, sigma) in blended([ledger.variables for ledger in ledgers], shares).items():
             before, _ = variables.get(key, (0.0, 0.0))
             variables[key] = (before + count, sigma)
         lines.extend(lowest.lines)
