@@ -141,7 +141,7 @@ def run_batch(source: Path, target: Path, workers: int) -> tuple[float, float]:
 
 
 def test_batch_on_one_worker_against_reading_and_writing_with_RDKit(tmp_path: Path, benchmark: Any) -> None:
-    """In processor time, so that what else the machine does counts for neither side."""
+    """In processor time, ours between two of theirs, so that a slow minute of the machine counts for both sides."""
     source = tmp_path / "in.smi"
     source.write_text("\n".join(mixed_smiles(10_000, seed=1)) + "\n", encoding="utf-8", newline="")
 
@@ -152,12 +152,17 @@ def test_batch_on_one_worker_against_reading_and_writing_with_RDKit(tmp_path: Pa
                 out.write(Chem.MolToSmiles(Chem.MolFromSmiles(line.strip())) + "\n")
         return time.process_time() - start
 
-    _, ours = run_batch(source, tmp_path / "out.csv", 1)
-    theirs = min(outside() for _ in range(3))
-    print(f"batch: {ours:.1f} s, RDKit {theirs:.2f} s, {ours / theirs:.1f} times")
-    benchmark.extra_info["ratio"] = ours / theirs
+    ratios = []
+    for _ in range(3):
+        before = outside()
+        _, ours = run_batch(source, tmp_path / "out.csv", 1)
+        theirs = (before + outside()) / 2
+        print(f"batch: {ours:.1f} s, RDKit {theirs:.2f} s, {ours / theirs:.1f} times")
+        ratios.append(ours / theirs)
+    ratio = statistics.median(ratios)
+    benchmark.extra_info["ratio"] = ratio
     benchmark.pedantic(outside, rounds=1)
-    assert ours / theirs <= 15.0
+    assert ratio <= 15.0
 
 
 @pytest.mark.skipif((os.cpu_count() or 1) < 2, reason="needs two cores")
