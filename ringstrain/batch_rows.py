@@ -120,7 +120,9 @@ def answer_chunk(chunk: tuple[BatchRecord, ...], settings: Settings) -> list[Row
 
 def lost_row(record: BatchRecord, settings: Settings) -> Row:
     """The row of a record whose worker died."""
-    return _failed(record, lost_worker(record.shown), settings, record.text if record.is_block else "")
+    cells: dict[str, Any] = dict.fromkeys(settings.columns)
+    cells.update(_failed(record, lost_worker(record.shown)))
+    return Row(cells=cells, block=record.text if record.is_block and settings.blocks else "")
 
 
 @lru_cache(maxsize=2)
@@ -143,6 +145,7 @@ def answer(record: BatchRecord, settings: Settings) -> Row:
         If the tables are faulty: every record would fail alike.
     """
     block = record.text if record.is_block else ""
+    cells: dict[str, Any] = dict.fromkeys(settings.columns)
     structure: Structure | None = None
     try:
         structure = _read(record, settings)
@@ -157,15 +160,15 @@ def answer(record: BatchRecord, settings: Settings) -> Row:
             tables=_tables(settings.table_file),
             strict=settings.strict,
         )
-        cells = {**_head(record), "smiles": analysis.smiles, "status": "ok", "message": "", **_columns(analysis)}
+        cells.update(_head(record), smiles=analysis.smiles, status="ok", message="", **_columns(analysis))
         if settings.nmr:
             cells.update(_couplings(analysis, _tables(settings.table_file)))
-        row = Row(cells=cells, block=block)
     except Exception as error:
-        row = _failed(record, failure_of(record.shown, error), settings, block)
+        cells = dict.fromkeys(settings.columns)
+        cells.update(_failed(record, failure_of(record.shown, error)))
     if settings.isomers and structure is not None:
-        row = replace(row, cells={**row.cells, **_isomers(structure, settings)})
-    return replace(row, cells={name: row.cells.get(name) for name in settings.columns})
+        cells.update(_isomers(structure, settings))
+    return Row(cells=cells, block=block if settings.blocks else "")
 
 
 def _read(record: BatchRecord, settings: Settings) -> Structure:
@@ -183,10 +186,9 @@ def _head(record: BatchRecord) -> dict[str, Any]:
     return {"input_line": record.line, "id": record.id, "input": record.shown}
 
 
-def _failed(record: BatchRecord, failure: Failure, settings: Settings, block: str) -> Row:
+def _failed(record: BatchRecord, failure: Failure) -> dict[str, Any]:
     status = failure.family if failure.family in STATUSES else "error"
-    cells = {**_head(record), "status": status, "message": failure.message}
-    return Row(cells={name: cells.get(name) for name in settings.columns}, block=block if settings.blocks else "")
+    return {**_head(record), "status": status, "message": failure.message}
 
 
 def _columns(analysis: Analysis) -> dict[str, Any]:

@@ -174,9 +174,7 @@ def _why_nothing(structure: Structure, sixes: list[tuple[int, ...]], fragment: f
 
 def _six_rings(structure: Structure, fragment: frozenset[int]) -> list[tuple[int, ...]]:
     """All six-membered rings, those that a smallest set of rings leaves out included."""
-    found: dict[frozenset[int], tuple[int, ...]] = {
-        frozenset(int(a) for a in ring): tuple(int(a) for a in ring) for ring in structure.rings if len(ring) == 6
-    }
+    found: dict[frozenset[int], tuple[int, ...]] = {frozenset(r): r for r in structure.rings if len(r) == 6}
     found = {key: ring for key, ring in found.items() if key <= fragment}
     keys = list(found)
     bridged: set[int] = set()
@@ -355,12 +353,18 @@ def _typed_ring(structure: Structure, atoms: tuple[int, ...], kinds: dict[int, A
     as in an enone, is taken along. Two planar neighbours without such a bond count as one flat bond.
     """
     planar = [i for i in range(6) if kinds[atoms[i]] == "sp2"]
+    pinned = any(len(ring) == 3 for ring in structure.rings)
     firm: list[int] = []
     loose: list[int] = []
     for i in range(6):
         a, b = atoms[i], atoms[(i + 1) % 6]
         bond = structure.bond(a, b)
-        if bond.aromatic or bond.order == 2 or _in_small_ring(structure, a, b) or _is_acyl_bond(structure, a, b, kinds):
+        if (
+            bond.aromatic
+            or bond.order == 2
+            or (pinned and _in_small_ring(structure, a, b))
+            or (planar and _is_acyl_bond(structure, a, b, kinds))
+        ):
             firm.append(i)
         elif kinds[a] == "sp2" and kinds[b] == "sp2":
             loose.append(i)

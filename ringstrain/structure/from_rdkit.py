@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from functools import lru_cache
 from typing import Any, Literal
 
@@ -30,6 +31,8 @@ def structure_from_rdkit(
     spans: tuple[tuple[int, int], ...] = (),
     notes: tuple[str, ...] = (),
     keep: bool = False,
+    marked: Sequence[bool] | None = None,
+    only_single: bool = False,
 ) -> Structure:
     """The frozen record of a sanitised molecule whose chirality tags nobody has cleaned.
 
@@ -45,6 +48,10 @@ def structure_from_rdkit(
         Remarks so far.
     keep
         True to keep the molecule for writing it again: it must hold nothing but what the records hold.
+    marked
+        Which RDKit atoms may have a chirality tag; None for any.
+    only_single
+        True when all bonds are known to be single ones. Like ``marked`` it spares slow questions, no more.
 
     Returns
     -------
@@ -69,9 +76,9 @@ def structure_from_rdkit(
                 a.GetNumRadicalElectrons(),
             )
         )
-        tag = a.GetChiralTag()
+        tag = a.GetChiralTag() if marked is None or marked[i] else _NO_TAG
         configurations.append(None if tag == _NO_TAG else _configuration(a, tag, index))
-    bonds, table, adjacency = _bonds(mol, index, len(atoms))
+    bonds, table, adjacency = _bonds(mol, index, len(atoms), only_single)
     parts = (tuple(atoms), bonds, tuple(configurations))
     return Structure(
         text=text,
@@ -114,7 +121,7 @@ def _fold_hydrogens(rdkit_atoms: list[Any], numbers: list[int]) -> tuple[list[in
 
 
 def _bonds(
-    mol: Any, index: list[int], size: int
+    mol: Any, index: list[int], size: int, only_single: bool
 ) -> tuple[tuple[Bond, ...], dict[tuple[int, int], Bond], list[list[AtomIndex]]]:
     """Bonds in input order, the same by atom pair, and the neighbour lists."""
     bonds: list[Bond] = []
@@ -126,7 +133,7 @@ def _bonds(
         i, j = index[b.GetBeginAtomIdx()], index[b.GetEndAtomIdx()]
         if i < 0 or j < 0:
             continue
-        kind = b.GetBondType()
+        kind = _SINGLE if only_single else b.GetBondType()
         first, second = AtomIndex(i), AtomIndex(j)
         if kind == _SINGLE:
             bond = _single(first, second)

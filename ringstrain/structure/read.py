@@ -18,6 +18,8 @@ from ringstrain.structure.shorthand import is_shorthand, read_shorthand
 MAX_CHARACTERS = 100_000
 MAX_ATOMS = 500
 _ATOM_TOKEN = re.compile(r"\[[^\]]*\]|Br|Cl|[BCNOPSFI*]|[bcnops]")
+#: What a SMILES needs to have any bond but single ones: a bond of its own kind or an aromatic atom.
+_NOT_SINGLE = re.compile(r"[=#$:~<>bcnopst*]")
 _IN_BRACKETS = re.compile(r"\[[^\]]*\]")
 _BAD_CHARACTER = re.compile(r"[^A-Za-z0-9@+\-\[\]()=#$:.%/\\*~>{}|,^&;!<'\"_?]")
 
@@ -117,12 +119,15 @@ def _read_smiles(text: str) -> Structure:
         _sanitize(mol, text=text)
         if "/" in core or "\\" in core:
             Chem.SetBondStereoFromDirections(mol)
-    spans = tuple([found.span() for found in _ATOM_TOKEN.finditer(core)])
+    tokens = list(_ATOM_TOKEN.finditer(core))
+    told_apart = len(tokens) == mol.GetNumAtoms()
     return structure_from_rdkit(
         mol,
         text=text,
         name=name,
-        spans=spans if len(spans) == mol.GetNumAtoms() else (),
+        spans=tuple([token.span() for token in tokens]) if told_apart else (),
+        marked=["@" in token.group() for token in tokens] if told_apart and not extended else None,
+        only_single=_NOT_SINGLE.search(core) is None,
         keep=not extended and ":" not in core,  # neither atom maps nor CXSMILES marks, which would be written again
     )
 
