@@ -23,6 +23,7 @@ from ringstrain.substituents import describe_group
 from ringstrain.symmetry import Operation, carries, operations
 from ringstrain.tables import Tables, load_tables
 from ringstrain.tables.conditions import make_conditions
+from ringstrain.tables.groups import Group
 from ringstrain.tables.prices import PriceBook, price_book
 from ringstrain.units import ROOM_TEMPERATURE_K
 
@@ -110,11 +111,19 @@ def analyze(
 def group_map(structure: Structure, system: RingSystem, tables: Tables) -> GroupMap:
     """Group on every site of a system, ring neighbours included where rings are fused or spiro."""
     groups: GroupMap = {}
+    members = system.atom_set
     several = len(system.rings) > 1
+    carbons: dict[int, Group] = {}  # a saturated ring carbon looks the same from each of its neighbours
     for atom in system.atoms:
         for n in structure.neighbours[atom]:
-            if n not in system.atom_set or several:
-                groups[(atom, int(n))] = describe_group(structure, int(n), atom, system.atom_set, tables)
+            if n in carbons:
+                groups[(atom, n)] = carbons[n]
+            elif n not in members:
+                groups[(atom, n)] = describe_group(structure, n, atom, members, tables)
+            elif several:
+                groups[(atom, n)] = group = describe_group(structure, n, atom, members, tables)
+                if system.kinds[n] == "sp3" and structure.atoms[n].number == 6:
+                    carbons[n] = group
     return groups
 
 

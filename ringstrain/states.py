@@ -186,6 +186,8 @@ def _agree(
 
 def _suits_companions(geometry: Geometry, number: int, shape: RingShape) -> bool:
     """True when every fused five- or seven-membered ring can close: its bonds here must be gauche, never anti."""
+    if not geometry.system.companions and not geometry.system.pinned:
+        return True
     atoms = geometry.system.rings[number].atoms
     if not all(_pinned_on_one_face(geometry, number, small) for small in geometry.system.pinned):
         return False
