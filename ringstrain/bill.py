@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
+from functools import lru_cache
 
 from ringstrain.contacts import Contact, Placed, Survey
 from ringstrain.geometry import Geometry
@@ -74,19 +75,25 @@ def _ring_place(geometry: Geometry, name: RingName, ring: int, atom: int) -> Rin
     """Position, and the symbols around the ring seen from there."""
     record = geometry.system.rings[ring]
     place = record.place(atom)
-    symbols = tuple(name.symbols[(place + i) % 6] for i in range(6))
     flat = 0
     if record.flat_bond is not None:
         ends = (record.flat_bond, (record.flat_bond + 1) % 6)
-        flat = min(min((place - e) % 6, (e - place) % 6) for e in ends)
-    known = name
-    if symbols[0] == "NR":  # the group on nitrogen is what is being placed, not part of the ring's name
-        known = rename(tuple("NH" if i == place else s for i, s in enumerate(name.symbols)))
-    bare = rename(tuple("NH" if s == "NR" else s for s in name.symbols))
-    title = known.name
-    if title == "oxane" and known.positions[place] == 3 and _has_anomeric_oxygen(geometry, record, place):
-        title = "2-oxyoxane"
-    return RingPlace(title, known.positions[place], symbols, flat, (bare.name, bare.positions[place]))
+        flat = min([min((place - e) % 6, (e - place) % 6) for e in ends])
+    found = _seen_from(name.symbols, place, flat)
+    if found.ring == "oxane" and found.position == 3 and _has_anomeric_oxygen(geometry, record, place):
+        return replace(found, ring="2-oxyoxane")
+    return found
+
+
+@lru_cache(maxsize=4096)
+def _seen_from(symbols: tuple[str, ...], place: int, flat: int) -> RingPlace:
+    """A position of a ring of these symbols, so far from its flat bond."""
+    known = rename(symbols)
+    if symbols[place] == "NR":  # the group on nitrogen is what is being placed, not part of the ring's name
+        known = rename(tuple(["NH" if i == place else s for i, s in enumerate(symbols)]))
+    bare = rename(tuple(["NH" if s == "NR" else s for s in symbols]))
+    turned = symbols[place:] + symbols[:place]
+    return RingPlace(known.name, known.positions[place], turned, flat, (bare.name, bare.positions[place]))
 
 
 def _has_anomeric_oxygen(geometry: Geometry, ring: Ring, place: int) -> bool:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import pytest
 import ringstrain as rs
 from ringstrain.analysis import State
+from ringstrain.tables.prices import price_book
 
 TABLES = rs.load_tables()
 HYDROCARBONS = ("CC1CCCCC1", "C[C@H]1CCC[C@@H](C)C1", "C1CC[C@H]2CCCC[C@H]2C1", "C[C@@]12CCCC[C@H]1CCCC2")
@@ -71,3 +72,16 @@ def test_geminal_like_groups_have_two_equal_chairs() -> None:
     first, second = states("CC1(C)CCCCC1")[:2]
     assert first.energy_kcal == pytest.approx(second.energy_kcal)
     assert second.equivalent_to == first.id
+
+
+def test_what_was_asked_before_does_not_change_a_price() -> None:
+    """Butylamino and methyl(propyl)amino share class and formula, but only one has a hydrogen to give."""
+    pair = ("F[C@@H]1CCCC[C@H]1NCCCC", "F[C@@H]1CCCC[C@H]1N(C)CCC")
+
+    def energies(order: tuple[str, ...]) -> dict[str, list[float]]:
+        price_book.cache_clear()
+        return {smiles: [state.energy_kcal for state in states(smiles)] for smiles in order}
+
+    first, second = energies(pair), energies(pair[::-1])
+    assert first == second
+    assert first[pair[0]] != first[pair[1]]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 #: The classes a group can fall into, each with its wider families from near to far.
 FAMILIES: dict[str, tuple[str, ...]] = {
@@ -68,6 +68,8 @@ class Group:
         True when its first atom can take one.
     ring_atom
         True when it is an atom of the same ring system (a fused or spiro neighbour).
+    traits
+        All that its prices depend on, in one word; groups without a row may share a key and differ in these.
     """
 
     key: str
@@ -80,6 +82,12 @@ class Group:
     donor: bool = False
     acceptor: bool = False
     ring_atom: bool = False
+    traits: str = field(init=False, repr=False, compare=False)
+
+    def __post_init__(self) -> None:
+        marks = (self.tabulated, self.round, self.polar, self.donor, self.acceptor)
+        traits = f"{self.key}/{self.kind}/" + "".join(["1" if mark else "0" for mark in marks])
+        object.__setattr__(self, "traits", traits)
 
     @property
     def names(self) -> tuple[str, ...]:

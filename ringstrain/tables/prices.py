@@ -8,6 +8,7 @@ value.
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from functools import lru_cache
 
 from ringstrain.provenance import Price, Term, scaled
@@ -38,11 +39,17 @@ class PriceBook:
         self.conditions = conditions
         self._memory: dict[tuple[str, ...], Price] = {}
 
-    def _remember(self, key: tuple[str, ...], price: Price) -> Price:
-        """Keep a price for the next molecule; a library of exotic groups must not fill the memory."""
-        if len(self._memory) >= _MOST_REMEMBERED:
-            self._memory.clear()
-        self._memory[key] = price
+    def remembered(self, key: tuple[str, ...], make: Callable[[], Price]) -> Price:
+        """A price that was asked for before, else one that is made now and kept for the next molecule.
+
+        The key must tell apart all that the price depends on: two groups by their ``traits``, not by their names.
+        """
+        price = self._memory.get(key)
+        if price is None:
+            price = make()
+            if len(self._memory) >= _MOST_REMEMBERED:  # a library of exotic groups must not fill the memory
+                self._memory.clear()
+            self._memory[key] = price
         return price
 
     # ---- A-values ------------------------------------------------------------------------------------------
@@ -54,11 +61,7 @@ class PriceBook:
         ----------
         ``avalues.csv`` through ``preference.csv``; ``estimates.csv`` and ``classes.csv`` for groups without a row.
         """
-        memory_key = ("A", group.key, group.kind)
-        price = self._memory.get(memory_key)
-        if price is None:
-            price = self._remember(memory_key, self._a_value(group))
-        return price
+        return self.remembered(("A", group.traits), lambda: self._a_value(group))
 
     def _a_value(self, group: Group) -> Price:
         if group.kind == "hydrogen" and not group.tabulated:
@@ -119,11 +122,7 @@ class PriceBook:
 
     def fusion(self, a: Group, d: Group) -> Price:
         """Ring-fusion gauche-butane between two ring atoms; with a heteroatom the mean of the two half-A's."""
-        memory_key = ("f", a.key, d.key, a.kind, d.kind)
-        price = self._memory.get(memory_key)
-        if price is None:
-            price = self._remember(memory_key, self._fusion(a, d))
-        return price
+        return self.remembered(("fusion", a.traits, d.traits), lambda: self._fusion(a, d))
 
     def _fusion(self, a: Group, d: Group) -> Price:
         if a.kind.endswith("alkyl") and d.kind.endswith("alkyl"):
@@ -159,11 +158,8 @@ class PriceBook:
         both_equatorial
             False when one of them is axial; matters for the few pairs measured apart.
         """
-        memory_key = ("g", x.key, y.key, x.kind, y.kind, str(both_equatorial))
-        price = self._memory.get(memory_key)
-        if price is None:
-            price = self._remember(memory_key, self._vicinal(x, y, both_equatorial))
-        return price
+        key = ("vicinal", x.traits, y.traits, "ee" if both_equatorial else "ae")
+        return self.remembered(key, lambda: self._vicinal(x, y, both_equatorial))
 
     def _vicinal(self, x: Group, y: Group, both_equatorial: bool) -> Price:
         if {x.kind, y.kind} & {"oxo", "ylidene"}:
@@ -195,28 +191,22 @@ class PriceBook:
 
     def syn_axial(self, x: Group, y: Group) -> Price:
         """Whole contact of two groups that stand syn-axial (or peri)."""
-        memory_key = ("s", x.key, y.key, x.kind, y.kind)
-        price = self._memory.get(memory_key)
-        if price is None:
-            found = self._find("syndiaxial", x, y)
-            if found is not None:
-                price = self._pair_price(x, y, *found)
-            else:
-                price = (
-                    self._like_pairs("syndiaxial", x, y)
-                    or product_rule(self.tables, "syn_axial", x, y)
-                    or unpriced("syn-axial term", x, y)
-                )
-            self._remember(memory_key, price)
-        return price
+        return self.remembered(("syn-axial", x.traits, y.traits), lambda: self._syn_axial(x, y))
+
+    def _syn_axial(self, x: Group, y: Group) -> Price:
+        found = self._find("syndiaxial", x, y)
+        if found is not None:
+            return self._pair_price(x, y, *found)
+        return (
+            self._like_pairs("syndiaxial", x, y)
+            or product_rule(self.tables, "syn_axial", x, y)
+            or unpriced("syn-axial term", x, y)
+        )
 
     def geminal(self, axial: Group, equatorial: Group) -> Price:
         """Correction for two groups on one ring atom, the first axial."""
-        memory_key = ("c", axial.key, equatorial.key, axial.kind, equatorial.kind)
-        price = self._memory.get(memory_key)
-        if price is None:
-            price = self._remember(memory_key, self._geminal(axial, equatorial))
-        return price
+        key = ("geminal", axial.traits, equatorial.traits, "alike" if axial.code == equatorial.code else "")
+        return self.remembered(key, lambda: self._geminal(axial, equatorial))
 
     def _geminal(self, axial: Group, equatorial: Group) -> Price:
         if axial.code == equatorial.code:
@@ -261,11 +251,7 @@ class PriceBook:
         KeyError
             If rules.csv has no such row.
         """
-        memory_key = ("rule", name, group)
-        price = self._memory.get(memory_key)
-        if price is None:
-            price = self._remember(memory_key, self._rule(name, group))
-        return price
+        return self.remembered(("rule", name, group), lambda: self._rule(name, group))
 
     def _rule(self, name: str, group: str) -> Price:
         claim = self.tables.row(f"rules/{name}")

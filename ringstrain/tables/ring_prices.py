@@ -87,6 +87,13 @@ def ring_value(book: PriceBook, place: RingPlace, group: Group) -> Price:
     """
     if place.is_plain:
         return book.a_value(group)
+    around = (*place.symbols, str(place.flat_distance), place.parent[0], str(place.parent[1]))
+    key = ("ring", place.ring, str(place.position), group.traits, *around)
+    return book.remembered(key, lambda: _value_at(book, place, group))
+
+
+def _value_at(book: PriceBook, place: RingPlace, group: Group) -> Price:
+    """The row of the position, else a scaled A-value."""
     exact = _lookup(book, place, group)
     if exact is not None:
         return exact
