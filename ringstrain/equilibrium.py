@@ -104,7 +104,7 @@ def blended(variables: Sequence[Variables], shares: Sequence[float]) -> Variable
 def difference_sigma(first: Variables, second: Variables) -> float:
     """Standard uncertainty of the difference of two sets [kcal/mol]; common terms cancel."""
     total = 0.0
-    for key in first.keys() | second.keys():
+    for key in first | second:  # not a set, whose order and so the last digit would differ from run to run
         a, sigma_a = first.get(key, (0.0, 0.0))
         b, sigma_b = second.get(key, (0.0, 0.0))
         total += ((a - b) * max(sigma_a, sigma_b)) ** 2

@@ -6,6 +6,8 @@ Outside checks: counts of stereoisomers known to the trade, and RDKit's CIP labe
 from __future__ import annotations
 
 import csv
+import pickle
+from dataclasses import replace
 from itertools import product
 from pathlib import Path
 from random import Random
@@ -14,6 +16,7 @@ import pytest
 import ringstrain as rs
 from rdkit import Chem
 from ringstrain.analysis import SystemResult
+from ringstrain.structure.write import write_smiles
 
 from zoo import FIXED, marked, mirrored, rewritten
 
@@ -133,6 +136,40 @@ def test_written_SMILES_keep_the_axial_atoms(smiles: str) -> None:
         assert sorted((len(s.axial), round(s.energy_kcal, 6)) for s in first.states) == sorted(
             (len(s.axial), round(s.energy_kcal, 6)) for s in second.states
         )
+
+
+@pytest.mark.parametrize(
+    "smiles",
+    [
+        *(smiles for _, smiles in FIXED),
+        "C[C@H]1CC[C@@H](C)CC1",
+        "OC1CC(O)CC(C1)C1=CC=C[NH]1",
+        "F/C=C/C1CCCCC1",
+        "[13CH3][C@@H]1CCCC[C@H]1[2H]",
+        "C[N+]1(CC)CCC[C@@H](C)C1.[Cl-]",
+        "[CH3:1]C1CCCCC1",
+    ],
+)
+def test_a_structure_is_written_alike_from_its_records_and_from_what_it_was_read_from(smiles: str) -> None:
+    for text, _ in (rewritten(marked(smiles), Random(seed)) for seed in range(5)):
+        structure = rs.read(text)
+        for canonical in (True, False):
+            assert write_smiles(structure, canonical=canonical) == write_smiles(
+                replace(structure, reading=None), canonical=canonical
+            )
+        travelled = pickle.loads(pickle.dumps(structure))
+        assert travelled == structure
+        assert travelled.reading is None
+        assert travelled.smiles == structure.smiles
+
+
+def test_an_edited_structure_is_not_written_as_what_it_was_read_from() -> None:
+    structure = rs.read("C[C@H]1CCC[C@@H](C)C1")
+    assert structure.reading is not None
+    assert structure.reading.fits(replace(structure, name="named"))
+    turned = tuple(given and replace(given, clockwise=not given.clockwise) for given in structure.configurations)
+    edited = replace(structure, configurations=(*turned[:5], *structure.configurations[5:]))
+    assert edited.smiles == replace(edited, reading=None).smiles != structure.smiles
 
 
 @pytest.mark.parametrize(
