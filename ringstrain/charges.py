@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from functools import partial
+
 from ringstrain.bill import Bill, Parties, axial_sites, pair_of, shared_ring
 from ringstrain.contacts import Contact, Survey
 from ringstrain.geometry import Geometry
 from ringstrain.provenance import Price
 from ringstrain.ringgraph import atom_kind
 from ringstrain.states import Shapes
+from ringstrain.tables.groups import Group
 from ringstrain.tables.prices import PriceBook
 
 
@@ -26,9 +29,14 @@ def charge_eclipsed(contact: Contact, parties: Parties, bill: Bill) -> None:
     """Eclipsed neighbours of a boat or half-chair, priced as gauche ones at least."""
     a, b, c, d = contact.atoms
     x, y = parties.groups[(b, a)], parties.groups[(c, d)]
-    base = parties.book.vicinal(x, y)
-    extra = parties.book.rule("eclipsed-extra", "/".join(pair_of(x.key, y.key)))
-    price = Price(
+    price = parties.book.remembered(("eclipsed", x.traits, y.traits), lambda: _eclipsed_price(parties.book, x, y))
+    bill.charge("vicinal eclipsed", pair_of(x.key, y.key), (a, d), price, (contact,))
+
+
+def _eclipsed_price(book: PriceBook, x: Group, y: Group) -> Price:
+    base = book.vicinal(x, y)
+    extra = book.rule("eclipsed-extra", "/".join(pair_of(x.key, y.key)))
+    return Price(
         value_kcal=base.value_kcal,
         terms=(*base.terms, *extra.terms),
         row=base.row,
@@ -39,7 +47,6 @@ def charge_eclipsed(contact: Contact, parties: Parties, bill: Bill) -> None:
         bound="at least",
         note="eclipsed neighbours priced as gauche ones",
     )
-    bill.charge("vicinal eclipsed", pair_of(x.key, y.key), (a, d), price, (contact,))
 
 
 def charge_transannular(contact: Contact, bill: Bill) -> None:
@@ -60,11 +67,14 @@ def charge_shapes(state: Shapes, parties: Parties, bill: Bill) -> None:
     for number, ring in enumerate(state.rings):
         if ring.shape not in ("twist-boat", "boat"):
             continue
-        name = parties.names[number].name
-        special = f"{ring.shape}-{name}"
-        known = parties.book.tables.has_row(f"rules/{special}")
-        price = parties.book.rule(special if known else ring.shape, name)
-        bill.charge("ring shape", (ring.shape,), state.geometry.system.rings[number].atoms, price)
+        shape, name, book = ring.shape, parties.names[number].name, parties.book
+        price = book.remembered(("shape", shape, name), partial(_shape_price, book, shape, name))
+        bill.charge("ring shape", (shape,), state.geometry.system.rings[number].atoms, price)
+
+
+def _shape_price(book: PriceBook, shape: str, name: str) -> Price:
+    special = f"{shape}-{name}"
+    return book.rule(special if book.tables.has_row(f"rules/{special}") else shape, name)
 
 
 def charge_companions(geometry: Geometry, book: PriceBook, bill: Bill) -> None:

@@ -200,7 +200,10 @@ def _torsion_of(rings: tuple[RingShape, ...], path: Path) -> float:
 
 def _syn_axial(state: Shapes, placed: tuple[Placed, ...]) -> list[Contact]:
     """Pairs of axial sites on ring atoms i and i+2 of one ring, on one face."""
-    axial = {(item.site.ring, item.site.place): item for item in placed if item.position == "axial"}
+    pointing = [item for item in placed if item.position == "axial"]
+    if all(item.occupant != "atom" for item in pointing):
+        return []
+    axial = {(item.site.ring, item.site.place): item for item in pointing}
     found = []
     for (ring, place), first in axial.items():
         second = axial.get((ring, (place + 2) % 6))

@@ -237,6 +237,9 @@ def compare(
     rt = R_KCAL * temperature_K
     sides = []
     for group in (favoured, other):
+        if len(group) == 1:
+            sides.append((group[0][1].total_kcal, group[0][1].variables))
+            continue
         energies = [ledger.total_kcal for _, ledger in group]
         shares = weights(energies, temperature_K)
         blend = blended([ledger.variables for _, ledger in group], shares)

@@ -150,6 +150,8 @@ def _ring_images(geometry: Geometry, images: dict[int, int]) -> tuple[RingImage,
 
 def maps_configuration(first: Geometry, second: Geometry, groups: Groups, mapping: Automorphism, sign: int) -> bool:
     """True when an automorphism of the given sign carries the first configuration onto the second."""
+    if first is second and sign > 0 and all(a == b for a, b in mapping.images.items()):
+        return True
     for number, landed in enumerate(mapping.rings):
         turn = sign * landed.direction
         for place, sites in enumerate(first.sites[number]):

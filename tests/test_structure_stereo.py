@@ -159,7 +159,7 @@ def test_a_structure_is_written_alike_from_its_records_and_from_what_it_was_read
             )
         travelled = pickle.loads(pickle.dumps(structure))
         assert travelled == structure
-        assert travelled.reading is None
+        assert travelled.reading is None or not travelled.reading.fits(travelled)
         assert travelled.smiles == structure.smiles
 
 

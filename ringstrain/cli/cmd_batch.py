@@ -39,8 +39,6 @@ Input .smi .csv .tsv .sdf (also .gz); output .csv .tsv .jsonl .sdf (also .gz) .p
 #: Fewer records than this are done in one process, since starting others takes longer.
 FEW = 2000
 _CHUNK = 100
-#: The same when this process does the work: few, so that progress and rows keep coming.
-_OWN_CHUNK = 10
 _INTERVAL_s = 0.5
 
 
@@ -253,7 +251,7 @@ def _engage(workers: int, scheduler: str | None) -> Iterator[tuple[Crew, int, in
             yield Crew(client.get_executor(pure=False)), _CHUNK, 4 * max(1, sum(client.nthreads().values()))
     elif workers == 1:
         with collecting_rarely():
-            yield Crew(Inline()), _OWN_CHUNK, 1
+            yield Crew(Inline()), 1, 1
     else:
         reopen: Callable[[], Executor] = partial(open_pool, workers)
         yield Crew(reopen(), reopen), _CHUNK, 3 * workers

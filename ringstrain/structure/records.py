@@ -6,7 +6,6 @@ hydrogens are folded into their atom, isotopic ones keep their place.
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any, Literal, NewType
 
@@ -110,12 +109,12 @@ def permutation_sign(first: tuple[int, ...], second: tuple[int, ...]) -> int:
     return sign
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, slots=True)
 class Reading:
     """What a structure was read from, kept so that writing it need not build the molecule again.
 
-    It serves only the structure that was read: one edited from it has other parts.  A copy that travels to another
-    process or is pickled arrives without it.
+    It serves only the structure that was read: one edited from it has other parts.  To another process it travels
+    empty.
 
     Attributes
     ----------
@@ -125,20 +124,16 @@ class Reading:
         Atoms, bonds and configurations it stands for.
     """
 
-    molecule: Any
-    parts: tuple[object, ...]
+    molecule: Any = field(default=None, repr=False, compare=False)
+    parts: tuple[object, object, object] = field(default=(None, None, None), repr=False, compare=False)
 
     def fits(self, structure: Structure) -> bool:
         """True for the structure that was read, whatever its name and remarks."""
         atoms, bonds, configurations = self.parts
         return structure.atoms is atoms and structure.bonds is bonds and structure.configurations is configurations
 
-    def __reduce__(self) -> tuple[Callable[[], None], tuple[()]]:
-        return _forgotten, ()
-
-
-def _forgotten() -> None:
-    """What is left of a reading in another process."""
+    def __reduce__(self) -> tuple[type[Reading], tuple[()]]:
+        return Reading, ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
