@@ -155,7 +155,7 @@ def _cards(geometry: Geometry) -> list[list[_Card]]:
     ]
 
 
-@lru_cache(maxsize=16384)
+@lru_cache(maxsize=4096)
 def _pointing(site: Site, occupant: Occupant) -> dict[Position, Placed]:
     """The records of a site that many states and molecules share."""
     positions: tuple[Position, ...] = ("axial", "equatorial", "isoclinal")

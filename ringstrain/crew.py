@@ -10,7 +10,7 @@ from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import BrokenExecutor, Executor, Future, ProcessPoolExecutor
 from contextlib import contextmanager
 from itertools import islice
-from typing import TypeVar
+from typing import Any, TypeVar
 
 from ringstrain.errors import RingstrainError
 
@@ -59,17 +59,45 @@ def collecting_rarely() -> Iterator[None]:
         gc.set_threshold(*before)
 
 
+class _Done(Future[Any]):
+    """A future that was never pending, without the locks that waiting takes."""
+
+    def __init__(self, outcome: Any, error: Exception | None) -> None:
+        self._outcome = outcome
+        self._error = error
+
+    def result(self, timeout: float | None = None) -> Any:
+        """What the work gave, or the exception it raised."""
+        if self._error is not None:
+            raise self._error
+        return self._outcome
+
+    def exception(self, timeout: float | None = None) -> Exception | None:
+        """The exception the work raised."""
+        return self._error
+
+    def done(self) -> bool:
+        """True."""
+        return True
+
+    def cancelled(self) -> bool:
+        """False."""
+        return False
+
+    def cancel(self) -> bool:
+        """False: it is too late."""
+        return False
+
+
 class Inline(Executor):
     """An executor that works at once in this process."""
 
     def submit(self, fn, /, *args, **kwargs):  # type: ignore[no-untyped-def]
         """A future that is already done."""
-        future: Future[object] = Future()
         try:
-            future.set_result(fn(*args, **kwargs))
+            return _Done(fn(*args, **kwargs), None)
         except Exception as error:
-            future.set_exception(error)
-        return future
+            return _Done(None, error)
 
 
 class Crew:

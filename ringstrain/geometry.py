@@ -71,7 +71,7 @@ class Site:
         return -120.0 * self.face if self.face else 180.0
 
 
-@lru_cache(maxsize=16384)
+@lru_cache(maxsize=4096)
 def _site(ring_atom: int, ring: int, place: int, neighbour: int, face: int) -> Site:
     """One shared record for a place that many molecules have."""
     return Site(ring_atom, ring, place, neighbour, face)

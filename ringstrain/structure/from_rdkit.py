@@ -153,7 +153,7 @@ def _bonds(
     return tuple(bonds), table, adjacency
 
 
-@lru_cache(maxsize=16384)
+@lru_cache(maxsize=4096)
 def _single(first: AtomIndex, second: AtomIndex) -> Bond:
     """One shared record for the single bonds between atoms of these numbers."""
     return Bond(first, second, 1)
