@@ -168,3 +168,9 @@ def test_a_nitrogen_takes_one_group_and_a_carbon_needs_a_face(text: str) -> None
 def test_patterns_on_a_nitrogen_can_be_read_again() -> None:
     for pattern in rs.enumerate_patterns(["Me", "Et"], ring="piperidine", enantiomers=True):
         assert rs.read(pattern.pattern, ring="piperidine").smiles == rs.read(pattern.smiles).smiles
+
+
+def test_a_list_may_begin_with_a_byte_order_mark_and_hold_comments_and_foreign_bytes(tmp_path: Path) -> None:
+    path = tmp_path / "list.smi"
+    path.write_bytes(b"\xef\xbb\xbfCC1CCCCC1\tfirst\n# a comment\nOC1CCCCC1 caf\xe9\n")
+    assert [structure.smiles for structure in rs.read_file(path)] == ["CC1CCCCC1", "OC1CCCCC1"]

@@ -172,13 +172,10 @@ def _is_file_name(argument: str) -> bool:
 def _from_file(path: str) -> Iterator[Record]:
     """Records of a file; a file that cannot be read is one faulty record."""
     from ringstrain.structure.files import read_records
-    from ringstrain.structure.shorthand import is_remark
 
     empty = True
     try:
         for text, name, is_block in read_records(path):
-            if not is_block and is_remark(text):
-                continue
             empty = False
             if is_block:
                 yield Record(text=text, name=name, is_block=True)

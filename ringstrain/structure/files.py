@@ -11,6 +11,7 @@ from typing import TextIO
 from ringstrain.errors import InputError
 from ringstrain.structure.read import read, read_molblock
 from ringstrain.structure.records import Structure
+from ringstrain.structure.shorthand import is_remark
 
 SUFFIXES = (".mol", ".sdf", ".smi")
 
@@ -58,23 +59,23 @@ def read_records(path: str | Path) -> Iterator[tuple[str, str, bool]]:
     try:
         with _open(path) as stream:
             yield from _smiles_records(stream) if kind == ".smi" else _block_records(stream, kind)
-    except (OSError, EOFError, UnicodeDecodeError, zlib.error) as error:
+    except (OSError, EOFError, zlib.error) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else "not a readable text file"
         raise InputError(f"The file {str(path)!r} cannot be read: {reason}.", "Check the path.") from None
 
 
 def _open(path: str | Path) -> TextIO:
-    """The file as text."""
+    """The file as text; a byte that is no UTF-8, in somebody's name say, costs nothing but itself."""
     if str(path).lower().endswith(".gz"):
-        return gzip.open(path, "rt", encoding="utf-8", newline=None)
-    return open(path, encoding="utf-8", newline=None)
+        return gzip.open(path, "rt", encoding="utf-8-sig", errors="backslashreplace", newline=None)
+    return open(path, encoding="utf-8-sig", errors="backslashreplace", newline=None)
 
 
 def _smiles_records(stream: TextIO) -> Iterator[tuple[str, str, bool]]:
-    """One record a line; a name may follow after a tab or blank."""
+    """One record a line; a name may follow after a tab or blank, and a comment is none."""
     for line in stream:
         text = line.rstrip("\r\n")
-        if text.strip():
+        if text.strip() and not is_remark(text):
             yield text, "", False
 
 
