@@ -120,8 +120,7 @@ def answer_chunk(chunk: tuple[BatchRecord, ...], settings: Settings) -> list[Row
 
 def lost_row(record: BatchRecord, settings: Settings) -> Row:
     """The row of a record whose worker died."""
-    cells: dict[str, Any] = dict.fromkeys(settings.columns)
-    cells.update(_failed(record, lost_worker(record.shown)))
+    cells = _failed(record, lost_worker(record.shown), settings)
     return Row(cells=cells, block=record.text if record.is_block and settings.blocks else "")
 
 
@@ -164,8 +163,7 @@ def answer(record: BatchRecord, settings: Settings) -> Row:
         if settings.nmr:
             cells.update(_couplings(analysis, _tables(settings.table_file)))
     except Exception as error:
-        cells = dict.fromkeys(settings.columns)
-        cells.update(_failed(record, failure_of(record.shown, error)))
+        cells = _failed(record, failure_of(record.shown, error), settings)
     if settings.isomers and structure is not None:
         cells.update(_isomers(structure, settings))
     return Row(cells=cells, block=block if settings.blocks else "")
@@ -186,9 +184,10 @@ def _head(record: BatchRecord) -> dict[str, Any]:
     return {"input_line": record.line, "id": record.id, "input": record.shown}
 
 
-def _failed(record: BatchRecord, failure: Failure) -> dict[str, Any]:
+def _failed(record: BatchRecord, failure: Failure, settings: Settings) -> dict[str, Any]:
     status = failure.family if failure.family in STATUSES else "error"
-    return {**_head(record), "status": status, "message": failure.message}
+    empty = dict.fromkeys(settings.columns)
+    return {**empty, **_head(record), "status": status, "message": failure.message}
 
 
 def _columns(analysis: Analysis) -> dict[str, Any]:
