@@ -93,6 +93,8 @@ def mixture_energy(energies_kcal: Sequence[float], temperature_K: float) -> floa
 
 def blended(variables: Sequence[Variables], shares: Sequence[float]) -> Variables:
     """Variables of a set of states: the share-weighted mean of their coefficients."""
+    if len(variables) == 1:
+        return variables[0]
     table: Variables = {}
     for own, share in zip(variables, shares, strict=True):
         for key, (count, sigma) in own.items():
@@ -237,9 +239,6 @@ def compare(
     rt = R_KCAL * temperature_K
     sides = []
     for group in (favoured, other):
-        if len(group) == 1:
-            sides.append((group[0][1].total_kcal, group[0][1].variables))
-            continue
         energies = [ledger.total_kcal for _, ledger in group]
         shares = weights(energies, temperature_K)
         blend = blended([ledger.variables for _, ledger in group], shares)
